@@ -1,0 +1,3 @@
+//! Files: CIF and XYZ.
+
+pub mod cif;

@@ -1,0 +1,3 @@
+//! The `interstice` binary: arguments in, exit code out.
+
+fn main() {}
