@@ -90,8 +90,10 @@ pub(super) fn weigh(ion: &Ion, offer: &Offer, anion: MeanAnion, set: RadiusSet) 
         (Fit::Fits, 0.0)
     };
     let expected = mean_observed(ion).map(|mean| mean * anion_scale(anion, set));
-    let site_preference =
-        SITE_PREFERENCE.iter().find(|(symbol, charge, _)| Some(ion.element) == Element::from_symbol(symbol) && ion.charge == *charge).map(|t| t.2);
+    let site_preference = SITE_PREFERENCE
+        .iter()
+        .find(|(symbol, charge, _)| Some(ion.element) == Element::from_symbol(symbol) && ion.charge == *charge)
+        .map(|t| t.2);
     let lost = if offer.coordination == 4 { site_preference.unwrap_or(0.0) } else { 0.0 };
     Ok(Evidence {
         radius,

@@ -13,7 +13,7 @@ mod spheres;
 
 pub use evidence::{Evidence, Fit};
 pub use offer::{Offer, Rung, ladder, offers};
-pub use plan::{Plan, Seat, Seating, decide};
+pub use plan::{NEAR_TIE, Plan, Seat, Seating, decide};
 pub use request::SeatRequest;
 pub use spheres::{SphereCount, sphere_count};
 
@@ -32,7 +32,9 @@ pub enum SeatingError {
         missing: &'static str,
     },
     /// The packing cannot hold that many cations.
-    #[error("`{composition}` asks for {needed} {kind} interstices per formula unit, but {host} offers {available}; {remedy}")]
+    #[error(
+        "`{composition}` asks for {needed} {kind} interstices per formula unit, but {host} offers {available}; {remedy}"
+    )]
     TooFew {
         /// The composition.
         composition: String,
@@ -60,7 +62,9 @@ pub enum SeatingError {
         elsewhere: String,
     },
     /// `--seats` cannot be read or does not fit the composition.
-    #[error("seats `{text}`: {reason}; write for example `Mg:tetrahedral,Al:octahedral`, with an amount where an ion is split: `Fe(III):tetrahedral=1`")]
+    #[error(
+        "seats `{text}`: {reason}; write for example `Mg:tetrahedral,Al:octahedral`, with an amount where an ion is split: `Fe(III):tetrahedral=1`"
+    )]
     Request {
         /// As given.
         text: String,
@@ -71,7 +75,9 @@ pub enum SeatingError {
     #[error(transparent)]
     Radius(#[from] crate::ion::radius::RadiusError),
     /// More cations than assignments can be listed for.
-    #[error("{ions} kinds of cation in {kinds} kinds of interstice give more than {limit} assignments; say with `--seats` where some of them sit")]
+    #[error(
+        "{ions} kinds of cation in {kinds} kinds of interstice give more than {limit} assignments; say with `--seats` where some of them sit"
+    )]
     TooMany {
         /// Number of cations.
         ions: usize,

@@ -73,7 +73,9 @@ pub fn decide(
     requests: &[SeatRequest],
     set: RadiusSet,
 ) -> Result<Seating, SeatingError> {
-    for (missing, empty) in [("cation", composition.cations().next().is_none()), ("anion", composition.anions().next().is_none())] {
+    for (missing, empty) in
+        [("cation", composition.cations().next().is_none()), ("anion", composition.anions().next().is_none())]
+    {
         if empty {
             return Err(SeatingError::OneSided { composition: composition.to_string(), missing });
         }
@@ -121,7 +123,12 @@ fn check_requests(requests: &[SeatRequest], offers: &[Offer], host: &str) -> Res
     match requests.iter().find(|r| offers.iter().all(|offer| offer.kind != r.kind)) {
         None => Ok(()),
         Some(request) => {
-            let hosts = ladder().iter().filter(|rung| rung.kind == request.kind).flat_map(|rung| &rung.hosts).unique().join(", ");
+            let hosts = ladder()
+                .iter()
+                .filter(|rung| rung.kind == request.kind)
+                .flat_map(|rung| &rung.hosts)
+                .unique()
+                .join(", ");
             Err(SeatingError::NoSuchKind {
                 host: host.into(),
                 kind: request.kind.to_string(),
@@ -140,12 +147,11 @@ fn distributions(
     offers: &[Offer],
     requests: &[SeatRequest],
 ) -> Result<Vec<Vec<Vec<Amount>>>, SeatingError> {
-    let rows: Vec<Vec<Vec<Amount>>> = cations
-        .iter()
-        .map(|(ion, amount)| rows_of(ion, *amount, offers, requests))
-        .collect::<Result<_, _>>()?;
+    let rows: Vec<Vec<Vec<Amount>>> =
+        cations.iter().map(|(ion, amount)| rows_of(ion, *amount, offers, requests)).collect::<Result<_, _>>()?;
     let too_many = SeatingError::TooMany { ions: cations.len(), kinds: offers.len(), limit: MAX_PLANS };
-    let count = rows.iter().try_fold(1_usize, |n, r| n.checked_mul(r.len())).filter(|n| *n <= MAX_PLANS).ok_or(too_many)?;
+    let count =
+        rows.iter().try_fold(1_usize, |n, r| n.checked_mul(r.len())).filter(|n| *n <= MAX_PLANS).ok_or(too_many)?;
     let mut all: Vec<Vec<Vec<Amount>>> = Vec::with_capacity(count);
     for choice in rows.iter().map(|r| r.iter().cloned()).multi_cartesian_product() {
         for swapped in exchanges(&choice, cations, requests) {
@@ -161,7 +167,12 @@ fn distributions(
 }
 
 /// The rows that one ion may have: all in one kind, or what the requests say with the rest in one kind.
-fn rows_of(ion: &Ion, amount: Amount, offers: &[Offer], requests: &[SeatRequest]) -> Result<Vec<Vec<Amount>>, SeatingError> {
+fn rows_of(
+    ion: &Ion,
+    amount: Amount,
+    offers: &[Offer],
+    requests: &[SeatRequest],
+) -> Result<Vec<Vec<Amount>>, SeatingError> {
     let mine: Vec<&SeatRequest> = requests.iter().filter(|r| r.ion == *ion).collect();
     let mut fixed = vec![Amount::zero(); offers.len()];
     let mut rest_in = None;
@@ -174,7 +185,9 @@ fn rows_of(ion: &Ion, amount: Amount, offers: &[Offer], requests: &[SeatRequest]
         }
     }
     let rest = amount - fixed.iter().sum::<Amount>();
-    if rest < Amount::zero() || (rest > Amount::zero() && !mine.is_empty() && rest_in.is_none() && mine.iter().all(|r| r.amount.is_none())) {
+    if rest < Amount::zero()
+        || (rest > Amount::zero() && !mine.is_empty() && rest_in.is_none() && mine.iter().all(|r| r.amount.is_none()))
+    {
         return Err(SeatingError::Request {
             text: mine.iter().map(|r| format!("{}:{}", r.ion, r.kind)).join(","),
             reason: format!("more {ion} is seated than the {amount} of the composition"),
@@ -197,7 +210,7 @@ fn exchanges(choice: &[Vec<Amount>], cations: &[(Ion, Amount)], requests: &[Seat
     let free = |i: usize| requests.iter().all(|r| r.ion != cations[i].0);
     let home = |i: usize| choice[i].iter().position(|a| *a == cations[i].1);
     let mut out = Vec::new();
-    for (i, j) in (0..cations.len()).tuple_combinations() {
+    for [i, j] in (0..cations.len()).array_combinations() {
         let (Some(p), Some(q)) = (home(i), home(j)) else { continue };
         if p == q || !free(i) || !free(j) {
             continue;
@@ -257,8 +270,11 @@ fn too_few(
     let (needed, kind, available) = match requests.first() {
         Some(first) => {
             let o = offers.iter().position(|offer| offer.kind == first.kind).unwrap_or(0);
-            let needed =
-                requests.iter().filter(|r| r.kind == first.kind).map(|r| r.amount.unwrap_or_else(|| composition.amount_of(&r.ion))).sum();
+            let needed = requests
+                .iter()
+                .filter(|r| r.kind == first.kind)
+                .map(|r| r.amount.unwrap_or_else(|| composition.amount_of(&r.ion)))
+                .sum();
             (needed, first.kind.to_string(), available[o])
         }
         None => (all, "any one kind of".to_string(), available.iter().copied().max().unwrap_or_default()),

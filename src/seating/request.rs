@@ -38,7 +38,8 @@ impl SeatRequest {
                     (kind.trim(), Some(value))
                 }
             };
-            let kind = Kind::parse(kind_text).ok_or_else(|| fail(format!("`{kind_text}` is not a kind of interstice")))?;
+            let kind =
+                Kind::parse(kind_text).ok_or_else(|| fail(format!("`{kind_text}` is not a kind of interstice")))?;
             let ions = ions_named(ion_text.trim(), composition);
             if ions.is_empty() {
                 return Err(fail(format!("`{}` is no cation of `{composition}`", ion_text.trim())));
@@ -70,7 +71,8 @@ fn split_outside_parentheses(text: &str) -> Vec<&str> {
 /// Cations of the composition that `Fe` or `Fe(III)` stands for.
 fn ions_named(text: &str, composition: &Composition) -> Vec<Ion> {
     let Ok(parsed) = formula::parse(text) else { return Vec::new() };
-    let [formula::Part { what: formula::Named::Element { element, charge, spin }, .. }] = parsed.parts.as_slice() else {
+    let [formula::Part { what: formula::Named::Element { element, charge, spin }, .. }] = parsed.parts.as_slice()
+    else {
         return Vec::new();
     };
     composition

@@ -1,12 +1,13 @@
-//! Pauling's second rule as evidence for a set of seats, before any order is chosen.
+//! Pauling's second and fifth rules as evidence for a set of seats, before any order is chosen.
 //!
 //! Charge neutrality makes the *mean* bond-strength sum of the anions equal to their charge; what a set of seats
-//! decides is how far single anions must stray from it. With m_g neighbours of group g (strength s_g = charge/CN) on
-//! average, an anion has whole numbers n_g of them. The least variance of Σ n_g s_g over all distributions of whole
-//! numbers with these means is a linear programme in the shares p(n): minimise Σ p(n) (Σ n_g s_g − z)², Σ p(n) n_g = m_g,
-//! Σ p(n) = 1. Zero means that an arrangement obeying the rule everywhere is not excluded by counting.
+//! decides is how far single anions must stray from it while they stay as alike as counting allows (rule 5). With m_g
+//! neighbours of group g (strength s_g = charge/CN) on average, an anion then has ⌊m_g⌋ or ⌈m_g⌉ of them. The least
+//! variance of Σ n_g s_g over all distributions of such whole numbers with these means is a linear programme in the
+//! shares p(n): minimise Σ p(n) (Σ n_g s_g − z)², Σ p(n) n_g = m_g, Σ p(n) = 1.
 //!
-//! L. Pauling, J. Am. Chem. Soc. 51, 1010 (1929), doi:10.1021/ja01379a006.
+//! Anions of two very different kinds may satisfy rule 2 where this number is not zero: it weighs seats, it proves
+//! nothing. L. Pauling, J. Am. Chem. Soc. 51, 1010 (1929), doi:10.1021/ja01379a006.
 
 use itertools::Itertools;
 
@@ -18,9 +19,6 @@ pub(super) struct Group {
     /// Mean number of such neighbours of an anion.
     pub mean: f64,
 }
-
-/// More whole-number neighbourhoods than this are not tried; the means' floor and ceiling alone are.
-const MAX_NEIGHBOURHOODS: usize = 2048;
 
 /// More groups than this are not weighed at all.
 const MAX_GROUPS: usize = 10;
@@ -35,14 +33,8 @@ pub(super) fn least_deviation(groups: &[Group]) -> Option<f64> {
         return None;
     }
     let mean_sum: f64 = groups.iter().map(|g| g.strength * g.mean).sum();
-    let wide = |g: &Group| (floor(g.mean) - 1).max(0)..=floor(g.mean) + 2;
-    let narrow = |g: &Group| floor(g.mean)..=floor(g.mean) + i64::from(g.mean - floor(g.mean) as f64 > EPSILON);
-    let count: usize = groups.iter().map(|g| wide(g).count()).product();
-    let hoods: Vec<Vec<i64>> = if count <= MAX_NEIGHBOURHOODS {
-        groups.iter().map(wide).multi_cartesian_product().collect()
-    } else {
-        groups.iter().map(narrow).multi_cartesian_product().collect()
-    };
+    let counts = |g: &Group| floor(g.mean)..=floor(g.mean) + i64::from(g.mean - floor(g.mean) as f64 > EPSILON);
+    let hoods: Vec<Vec<i64>> = groups.iter().map(counts).multi_cartesian_product().collect();
     let cost: Vec<f64> = hoods
         .iter()
         .map(|n| n.iter().zip(&groups).map(|(n, g)| *n as f64 * g.strength).sum::<f64>() - mean_sum)
@@ -118,8 +110,11 @@ mod tests {
         let octahedra = [Group { strength: 1.0 / 3.0, mean: 1.5 }, Group { strength: 0.5, mean: 3.0 }];
         assert!((least_deviation(&octahedra).unwrap() - 1.0 / 6.0).abs() < 1e-9);
         // Inverse: Al (3/4) in tetrahedra, 1.5 Al and 1.5 Mg in octahedra; two of one and one of the other.
-        let inverse =
-            [Group { strength: 0.75, mean: 1.0 }, Group { strength: 0.5, mean: 1.5 }, Group { strength: 1.0 / 3.0, mean: 1.5 }];
+        let inverse = [
+            Group { strength: 0.75, mean: 1.0 },
+            Group { strength: 0.5, mean: 1.5 },
+            Group { strength: 1.0 / 3.0, mean: 1.5 },
+        ];
         assert!((least_deviation(&inverse).unwrap() - 1.0 / 12.0).abs() < 1e-9);
     }
 

@@ -23,7 +23,11 @@ pub fn sphere_count(composition: &Composition) -> SphereCount {
     let anions = sum(&mut composition.anions().map(|(_, amount)| *amount));
     let cations = sum(&mut composition.cations().map(|(_, amount)| *amount));
     if !composition.vacancies.is_zero() || anions.is_integer() || !cations.is_integer() {
-        return SphereCount { spheres: anions + composition.vacancies, vacant: composition.vacancies, assumption: None };
+        return SphereCount {
+            spheres: anions + composition.vacancies,
+            vacant: composition.vacancies,
+            assumption: None,
+        };
     }
     let (spheres, vacant) = (anions.ceil(), anions.ceil() - anions);
     let assumption = format!(
