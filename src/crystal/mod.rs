@@ -5,6 +5,7 @@
 pub mod lattice;
 pub mod neighbours;
 pub mod structure;
+pub mod supercell;
 pub mod symmetry;
 pub mod transformation;
 

@@ -85,7 +85,7 @@ pub fn fit(
             let distance = seat.evidence.radius.angstrom + anion_radius;
             Contact {
                 cation: seat.ion,
-                radius: seat.evidence.radius.clone(),
+                radius: seat.evidence.radius,
                 offer: seat.offer,
                 distance,
                 scale: distance / offer.distance,
