@@ -1,3 +1,4 @@
 //! Files: CIF and XYZ.
 
 pub mod cif;
+pub mod xyz;
