@@ -1,3 +1,9 @@
 //! The `interstice` binary: arguments in, exit code out.
 
-fn main() {}
+use std::process::ExitCode;
+
+mod cli;
+
+fn main() -> ExitCode {
+    cli::main()
+}

@@ -164,7 +164,7 @@ fn tidy(position: &Fractional) -> Fractional {
     const ROUNDING: f64 = 1e-9;
     let on_grid = |x: f64| {
         let nearest = (x * GRID).round() / GRID;
-        if (nearest - x).abs() < ROUNDING { nearest } else { x }
+        if (nearest - x).abs() < ROUNDING { nearest + 0.0 } else { x }
     };
     Fractional(position.0.map(on_grid)).reduced()
 }

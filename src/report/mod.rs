@@ -1,1 +1,8 @@
-//! (to come)
+//! What people see: tables for the terminal and values for JSON. Prints nothing itself.
+
+pub mod cells;
+pub mod holes;
+pub mod radii;
+pub mod seats;
+pub mod table;
+pub mod vetting;

@@ -1,0 +1,53 @@
+//! What the rules say of a structure that was read.
+
+use crate::format::cif::ReadStructure;
+use crate::rules::Finding;
+use serde::Serialize;
+
+/// One structure of one file.
+#[derive(Debug, Serialize)]
+pub struct Vetted {
+    /// Path as given.
+    pub path: String,
+    /// Data block.
+    pub block: String,
+    /// Sites in the cell.
+    pub sites: usize,
+    /// Space group found by search.
+    pub space_group: Option<i32>,
+    /// Whether charges were assigned here because the file states none.
+    pub charges_assigned: bool,
+    /// Warnings of the reader, with their places.
+    pub warnings: Vec<String>,
+    /// Findings.
+    pub findings: Vec<Finding>,
+    /// Labels of the sites that each finding names.
+    pub labels: Vec<Vec<String>>,
+}
+
+/// Labels of the sites of a finding.
+pub fn labels(read: &ReadStructure, finding: &Finding) -> Vec<String> {
+    finding.sites.iter().filter_map(|i| read.labels.get(*i).cloned()).collect()
+}
+
+/// What people read.
+pub fn text(vetted: &Vetted) -> String {
+    let group = vetted.space_group.map_or("space group not found".to_string(), |n| format!("space group {n}"));
+    let mut out = format!("{}: block {}, {} sites in the cell, {group}\n", vetted.path, vetted.block, vetted.sites);
+    for warning in &vetted.warnings {
+        out += &format!("  read with a warning: {warning}\n");
+    }
+    if vetted.charges_assigned {
+        out += "  charges are not stated in the file; the common oxidation states were assigned\n";
+    }
+    for (finding, labels) in vetted.findings.iter().zip(&vetted.labels) {
+        let sites = if labels.is_empty() { String::new() } else { format!(" [{}]", labels.join(", ")) };
+        let cases = if finding.cases > 1 { format!(", {} cases", finding.cases) } else { String::new() };
+        out +=
+            &format!("  {}: {}: {}{sites}{cases}; {}\n", finding.severity, finding.rule, finding.text, finding.source);
+    }
+    if vetted.findings.is_empty() {
+        out += "  no findings\n";
+    }
+    out
+}
