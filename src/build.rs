@@ -17,7 +17,7 @@ use crate::packing::{Host, Interstice, interstices};
 use crate::recipe::{CellChoice, MAX_KEEP, Order, Pattern, Recipe};
 use crate::rules::{self, Finding, Terms};
 use crate::seating::{self, Plan, SeatRequest, Seating};
-use num_traits::{One, Zero};
+use num_traits::Zero;
 
 /// Everything decided before any cell is filled.
 #[derive(Clone, Debug)]
@@ -515,10 +515,5 @@ pub fn formula_units(structure: &Structure, composition: &Composition) -> Option
     let amounts = structure.amounts();
     let of = |i: &(crate::ion::Ion, Amount)| amounts.get(&i.0.into()).map(|n| n / i.1);
     let first = of(composition.ions.first()?)?;
-    composition
-        .ions
-        .iter()
-        .all(|i| of(i) == Some(first))
-        .then_some(first)
-        .filter(|z| *z >= Amount::one() || !z.is_zero())
+    composition.ions.iter().all(|i| of(i) == Some(first)).then_some(first)
 }

@@ -76,7 +76,7 @@ pub enum Error {
         smallest: String,
     },
     /// A request beyond a named limit.
-    #[error("{what} of {asked} is beyond the limit of {limit}")]
+    #[error("{what} of {asked} is refused; the limit is {limit}")]
     Limit {
         /// What was asked for.
         what: &'static str,

@@ -187,12 +187,14 @@ impl Filling {
             })
         };
         let distance = |n: &Vec<i64>| wanted.iter().zip(n).map(|(w, n)| (w.2 - *n as f64).powi(2)).sum::<f64>();
+        // A composition that loses one of its ions is another one: taken only if there is no other.
+        let lost = |n: &Vec<i64>| n.iter().filter(|k| **k == 0).count();
         let best = wanted
             .iter()
             .map(|w| range(w.2))
             .multi_cartesian_product()
             .filter(|n| neutral(n) && fits(n) && n.iter().any(|k| *k > 0))
-            .min_by(|a, b| distance(a).total_cmp(&distance(b)))?;
+            .min_by(|a, b| lost(a).cmp(&lost(b)).then(distance(a).total_cmp(&distance(b))))?;
         Some(
             (0..self.classes.len())
                 .map(|c| wanted.iter().zip(&best).filter(|(w, _)| w.0 == c).map(|(_, n)| *n as usize).collect())

@@ -32,7 +32,7 @@ pub struct Arguments {
     #[arg(long, value_name = "N", group = "extent")]
     atoms: Option<usize>,
     /// The smallest cell whose images are so far apart
-    #[arg(long, value_name = "Å", group = "extent")]
+    #[arg(long, value_name = "Å", group = "extent", allow_negative_numbers = true)]
     span: Option<f64>,
     /// All distinct supercells of index 1 to N
     #[arg(long, value_name = "N", group = "extent")]

@@ -63,6 +63,12 @@ pub const HYPOTHESIS: &str =
 pub fn gather(built: &Built) -> Summary {
     let first = built.cells.first().and_then(|c| c.energy);
     let mut cautions = built.decision.cautions.clone();
+    let searched = matches!(built.recipe.order, crate::recipe::Order::Lowest | crate::recipe::Order::Every);
+    if searched && built.recipe.cell == crate::recipe::CellChoice::Smallest {
+        cautions.push(
+            "only the smallest cell was searched; larger ones may hold lower orders (`--up-to N`, `--atoms N`)".into(),
+        );
+    }
     let elements = built.decision.composition.ions.iter().map(|(ion, _)| ion.element).collect();
     cautions.extend(crate::ion::hazard::cautions(&elements));
     Summary {

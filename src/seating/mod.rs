@@ -33,14 +33,14 @@ pub enum SeatingError {
     },
     /// The packing cannot hold that many cations.
     #[error(
-        "`{composition}` asks for {needed} {kind} interstices per formula unit, but {host} offers {available}; {remedy}"
+        "`{composition}` asks for {needed} interstices of {kind} per formula unit, but {host} offers {available}; {remedy}"
     )]
     TooFew {
         /// The composition.
         composition: String,
         /// How many are asked for.
         needed: Amount,
-        /// Of which kind (or `any kind of`).
+        /// Of which kind: `one kind`, `tetrahedral kind`.
         kind: String,
         /// The host's name.
         host: String,

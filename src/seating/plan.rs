@@ -275,9 +275,9 @@ fn too_few(
                 .filter(|r| r.kind == first.kind)
                 .map(|r| r.amount.unwrap_or_else(|| composition.amount_of(&r.ion)))
                 .sum();
-            (needed, first.kind.to_string(), available[o])
+            (needed, format!("{} kind", first.kind), available[o])
         }
-        None => (all, "any one kind of".to_string(), available.iter().copied().max().unwrap_or_default()),
+        None => (all, "one kind".to_string(), available.iter().copied().max().unwrap_or_default()),
     };
     SeatingError::TooFew {
         composition: composition.to_string(),
