@@ -8,7 +8,7 @@ use interstice::format::cif::{CifError, Document, ReadStructure, document, read_
 use interstice::ion::formula::{Formula, Named, Part};
 use interstice::ion::oxidation;
 use interstice::report::vetting::{Vetted, labels, text};
-use interstice::rules::{Limits, Severity, Terms, judge, worst};
+use interstice::rules::{Limits, Severity, Shells, Terms, judge, worst};
 
 #[derive(clap::Args)]
 pub struct Arguments {
@@ -90,6 +90,11 @@ fn judged(path: &str, read: &mut ReadStructure, arguments: &Arguments) -> Vetted
         block: read.block.clone(),
         sites: read.structure.sites.len(),
         space_group: symmetrise(&read.structure, TOLERANCE).ok().map(|s| s.group.number),
+        shortest: Shells::new(&read.structure)
+            .contacts
+            .iter()
+            .filter_map(|near| near.first().map(|n| n.distance))
+            .min_by(f64::total_cmp),
         charges_assigned,
         warnings: read.warnings.iter().map(ToString::to_string).collect(),
         labels: findings.iter().map(|f| labels(read, f)).collect(),

@@ -15,6 +15,8 @@ pub struct Vetted {
     pub sites: usize,
     /// Space group found by search.
     pub space_group: Option<i32>,
+    /// Shortest distance between any two sites, Å; absent if none are within reach.
+    pub shortest: Option<f64>,
     /// Whether charges were assigned here because the file states none.
     pub charges_assigned: bool,
     /// Warnings of the reader, with their places.
