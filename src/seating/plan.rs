@@ -8,7 +8,7 @@ use super::{SeatRequest, SeatingError};
 use crate::ion::amount::to_f64;
 use crate::ion::composition::Composition;
 use crate::ion::radius::{RadiusSet, radius};
-use crate::ion::{Amount, Ion};
+use crate::ion::{Amount, Element, Ion};
 use itertools::Itertools;
 use num_traits::Zero;
 
@@ -236,7 +236,7 @@ fn weigh_plan(
 ) -> Plan {
     let mut seats = Vec::new();
     let (mut penalty, mut total) = (0.0, 0.0);
-    let mut groups = Vec::new();
+    let mut bonds = Vec::new();
     for (i, (ion, _)) in cations.iter().enumerate() {
         for (o, offer) in offers.iter().enumerate() {
             let amount = amounts[i][o];
@@ -246,16 +246,34 @@ fn weigh_plan(
             let share = to_f64(&amount);
             penalty += share * evidence[i][o].penalty;
             total += share;
-            groups.push(Group {
-                strength: evidence[i][o].bond_strength,
-                mean: share * offer.coordination as f64 / to_f64(&spheres),
-            });
+            bonds.push((
+                ion.element,
+                o,
+                evidence[i][o].bond_strength,
+                share * offer.coordination as f64 / to_f64(&spheres),
+            ));
             seats.push(Seat { ion: *ion, offer: o, amount, evidence: evidence[i][o].clone() });
         }
     }
-    let rule2_deviation = least_deviation(&groups);
+    let rule2_deviation = least_deviation(&groups(&bonds));
     let fills = (0..offers.len()).map(|o| amounts.iter().map(|row| row[o]).sum::<Amount>() / available[o]).collect();
     Plan { seats, fills, rule2_deviation, penalty: penalty / total + RULE2_WEIGHT * rule2_deviation.unwrap_or(0.0) }
+}
+
+/// Cations by bond strength as the anions meet them. Ions of one element in one kind of interstice count with their mean
+/// strength: there the valence is shared between them (magnetite, LiMn2O4).
+fn groups(bonds: &[(Element, usize, f64, f64)]) -> Vec<Group> {
+    let mut groups: Vec<(Element, usize, Group)> = Vec::new();
+    for &(element, offer, strength, mean) in bonds {
+        match groups.iter_mut().find(|g| g.0 == element && g.1 == offer) {
+            Some((_, _, group)) => {
+                group.strength = (group.strength * group.mean + strength * mean) / (group.mean + mean);
+                group.mean += mean;
+            }
+            None => groups.push((element, offer, Group { strength, mean })),
+        }
+    }
+    groups.into_iter().map(|g| g.2).collect()
 }
 
 fn too_few(
