@@ -89,10 +89,11 @@ pub fn decide(recipe: &Recipe) -> Result<Decision, Error> {
     let mut cautions = assignment.cautions;
     cautions.extend(seating.spheres.assumption.clone());
     cautions.extend(seating.notes.iter().cloned());
-    if let [best, next, ..] = seating.plans.as_slice() {
-        if requests.is_empty() && next.penalty - best.penalty < seating::NEAR_TIE {
-            cautions.push("the seats are a near tie with the next assignment; decide with `--seats`".into());
-        }
+    if let [best, next, ..] = seating.plans.as_slice()
+        && requests.is_empty()
+        && next.penalty - best.penalty < seating::NEAR_TIE
+    {
+        cautions.push("the seats are a near tie with the next assignment; decide with `--seats`".into());
     }
     Ok(Decision { composition, cautions, host, interstices: found, seating, size })
 }

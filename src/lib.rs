@@ -3,7 +3,7 @@
 //! The modules are the pipeline: [`ion`] reads the composition and knows charges and radii; [`packing`] builds the host
 //! and finds its interstices; [`seating`] decides which of them each cation takes, with the evidence; [`metric`] how
 //! large the cell is; [`ordering`] which of the equal sites is taken by whom, by [`energy`] or at random; [`rules`] judge
-//! the result; [`format`] reads and writes files; [`report`] what people see. [`build`] runs them all for a [`recipe`].
+//! the result; [`mod@format`] reads and writes files; [`report`] what people see. [`mod@build`] runs them all for a [`recipe`].
 //!
 //! ```
 //! use interstice::{build::build, ordering::Progress, recipe::Recipe};

@@ -3,6 +3,8 @@
 //! For each: the space group that moyo finds equals the published one, coordination numbers too, and the shortest
 //! distances are those of ideal packings scaled by contact.
 
+#![allow(clippy::unwrap_used, reason = "a failed test may panic")]
+
 use interstice::build::{Built, build};
 use interstice::crystal::symmetry::{TOLERANCE, symmetrise};
 use interstice::crystal::{Fractional, Structure};

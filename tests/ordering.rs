@@ -1,5 +1,7 @@
 //! Orderings against published counts and known ground states.
 
+#![allow(clippy::unwrap_used, reason = "a failed test may panic")]
+
 use interstice::crystal::supercell::{compact, distinct};
 use interstice::crystal::symmetry::{TOLERANCE, operations};
 use interstice::crystal::{Fractional, Lattice, Transformation};

@@ -1,5 +1,7 @@
 //! Wrong calls: the whole message and the exit status of each, as a user meets them.
 
+#![allow(clippy::unwrap_used, reason = "a failed test may panic")]
+
 use std::path::Path;
 use std::process::Command;
 

@@ -24,8 +24,8 @@ pub fn hermite_normal_forms(index: usize) -> impl Iterator<Item = Matrix3<i32>> 
 
 /// How many superlattices of this index there are: Σ_{d|n} d σ(d).
 pub fn count(index: usize) -> usize {
-    let sigma = |n: usize| (1..=n).filter(|d| n % d == 0).sum::<usize>();
-    (1..=index).filter(|d| index % d == 0).map(|d| d * sigma(d)).sum()
+    let sigma = |n: usize| (1..=n).filter(|d| n.is_multiple_of(*d)).sum::<usize>();
+    (1..=index).filter(|d| index.is_multiple_of(*d)).map(|d| d * sigma(d)).sum()
 }
 
 /// The Hermite normal form of the superlattice spanned by the columns of `matrix` (determinant not zero).
@@ -132,12 +132,12 @@ pub fn most_compact(parent: &Lattice, index: usize) -> Option<Transformation> {
         hermite_normal_forms(index).for_each(|form| consider(&form));
     } else {
         const MAX_CORE: usize = 64;
-        let divisors: Vec<usize> = (1..=index).filter(|d| index % d == 0).collect();
+        let divisors: Vec<usize> = (1..=index).filter(|d| index.is_multiple_of(*d)).collect();
         for &core in divisors.iter().filter(|d| **d <= MAX_CORE) {
             let Some(cell) = most_compact(parent, core) else { continue };
             let rest = index / core;
-            for &x in divisors.iter().filter(|d| rest % **d == 0) {
-                for &y in divisors.iter().filter(|d| (rest / x) % **d == 0) {
+            for &x in divisors.iter().filter(|d| rest.is_multiple_of(**d)) {
+                for &y in divisors.iter().filter(|d| (rest / x).is_multiple_of(**d)) {
                     let scale = Vector3::new(x as i32, y as i32, (rest / x / y) as i32);
                     if scale.max() <= super::transformation::MAX_COEFFICIENT {
                         consider(&(cell.matrix() * Matrix3::from_diagonal(&scale)));

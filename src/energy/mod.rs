@@ -1,5 +1,5 @@
 //! Electrostatic energies of point charges in periodic cells.
 
-mod ewald;
+pub mod ewald;
 
 pub use ewald::{COULOMB, EwaldError, PairTable};

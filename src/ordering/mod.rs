@@ -1,15 +1,15 @@
 //! Which of the equal sites is taken by whom: orderings of a supercell with fixed amounts.
 //!
 //! A [`Problem`] holds the sites of a supercell, the amounts that each class of sites must hold, and the supercell's
-//! symmetry as permutations of sites. [`every`] lists all symmetry-distinct orderings, [`lowest`] seeks those of lowest
-//! electrostatic energy, [`random`] draws at random under constraints. Vacancies are a kind like any other.
+//! symmetry as permutations of sites. [`every()`] lists all symmetry-distinct orderings, [`lowest()`] seeks those of lowest
+//! electrostatic energy, [`random()`] draws at random under constraints. Vacancies are a kind like any other.
 
-mod anneal;
+pub mod anneal;
 mod arrangement;
 mod burnside;
-mod every;
-mod problem;
-mod random;
+pub mod every;
+pub mod problem;
+pub mod random;
 mod symmetry;
 
 pub use anneal::{Lowest, Search, lowest};

@@ -37,7 +37,7 @@ const REPAIR_STARTS: usize = 20;
 const MIXING: usize = 50;
 
 /// Draws tried for each distinct ordering wanted.
-const DRAWS_PER_ORDERING: usize = 200;
+pub const DRAWS_PER_ORDERING: usize = 200;
 
 /// Orderings are compared under symmetry while permutations × sites is at most this; their degeneracy is given as 0
 /// above it.

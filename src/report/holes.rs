@@ -67,7 +67,7 @@ pub fn gather(host: &Host, found: &[Interstice]) -> Holes {
 /// The table that people read.
 pub fn text(holes: &Holes) -> String {
     let p = &holes.primitive_cell;
-    let mut out = format!("{}", holes.host);
+    let mut out = holes.host.to_string();
     if let Some([letters, symbols]) = &holes.stacking {
         out += &format!(", layers {letters} ({symbols})");
     }

@@ -13,7 +13,7 @@ use crate::ion::radius::RadiusSet;
 use serde::{Deserialize, Serialize};
 use std::fmt;
 
-pub use shell::{SHELL_FACTOR, Shells};
+pub use shell::{REACH, SHELL_FACTOR, Shells};
 
 /// Which rule speaks.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord, Serialize)]

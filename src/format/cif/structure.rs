@@ -157,13 +157,12 @@ fn operations(
         }
     }
     if let Some(value) = block.value(&["_space_group_IT_number", "_symmetry_Int_Tables_number"]).filter(Value::is_given)
+        && let Some(group) = value.text.parse().ok().and_then(symbols::from_number)
     {
-        if let Some(group) = value.text.parse().ok().and_then(symbols::from_number) {
-            let message =
-                format!("only the number {} is given; its standard setting `{}` is used", group.number, group.hall);
-            warnings.push(document.fault(value.offset, message));
-            return Ok(group.operations);
-        }
+        let message =
+            format!("only the number {} is given; its standard setting `{}` is used", group.number, group.hall);
+        warnings.push(document.fault(value.offset, message));
+        return Ok(group.operations);
     }
     Err(document
         .fault(block.offset, format!("block `{}` states no symmetry: no operations, no symbol, no number", block.code)))
