@@ -85,7 +85,7 @@ fn cif(c: &mut Criterion) {
         })
         .collect();
     let structure = Structure { lattice: Lattice::from_parameters(&p).expect("a lattice"), sites };
-    let description = Description { p1: true, ..Description::default() };
+    let description = Description { explicit: true, ..Description::default() };
     let text = write(&structure, &description).expect("a file");
     let atoms = structure.sites.len();
     c.bench_function(&format!("write a CIF of {atoms} atoms"), |b| {

@@ -36,6 +36,9 @@ pub enum Error {
     /// No ordering.
     #[error(transparent)]
     Ordering(#[from] crate::ordering::OrderingError),
+    /// No CIF.
+    #[error(transparent)]
+    CifWrite(#[from] crate::format::cif::write::WriteError),
     /// No plain XYZ.
     #[error(transparent)]
     Xyz(#[from] crate::format::xyz::XyzError),
@@ -119,7 +122,7 @@ pub enum Error {
         /// Path.
         path: String,
         /// The fault.
-        fault: crate::format::cif::CifError,
+        fault: crate::format::cif::Diagnostic,
         /// The line at fault.
         excerpt: String,
     },

@@ -1,6 +1,6 @@
 #!/usr/bin/env bash
 # Sets up and passes all tests: formatting, lints, documentation, the test suite, and independent readers on every CIF of
-# the samples. Where the readers cannot be installed it says so and goes on; with CI=true that is a failure.
+# the samples and of the structure types that the suite writes. Where the readers cannot be installed it says so and goes on; with CI=true that is a failure.
 set -eu
 cd "$(dirname "$0")/.."
 step() { printf '\n== %s\n' "$1"; }
@@ -13,7 +13,7 @@ RUSTDOCFLAGS="-D warnings" cargo doc --quiet --no-deps
 step "tests"
 cargo test --quiet
 
-step "independent readers on the samples"
+step "independent readers on the files written"
 cargo build --quiet --release
 interstice="$PWD/target/release/interstice"
 rm -rf target/samples && mkdir -p target/samples
@@ -27,7 +27,7 @@ for case in "MgO ccp" "ZnS hcp" "CaF2 primitive-cubic" "CdI2 hcp" "FeS hcp" "Li2
     "$interstice" build "$1" --packing "$2" --into "target/samples/$1-$2" --quiet
 done
 if bash tests/readers/install.sh; then
-    target/readers/bin/python tests/readers/check.py "$interstice" target/samples/*/*.cif
+    target/readers/bin/python tests/readers/check.py "$interstice" target/samples/*/*.cif target/tmp/readers/*.cif
 elif [ "${CI:-}" = true ]; then
     exit 1
 fi

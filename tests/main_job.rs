@@ -45,8 +45,7 @@ fn check(built: &Built) {
         assert_eq!(cell.findings, [], "{}", built.recipe.composition);
         assert_eq!(cell.structure.charge(), Some(0.into()));
         for p1 in [false, true] {
-            let text =
-                write(&cell.structure, &Description { p1, tolerance: TOLERANCE, ..Description::default() }).unwrap();
+            let text = write(&cell.structure, &Description { explicit: p1, ..Description::default() }).unwrap();
             assert!(text.is_ascii() && text.lines().all(|l| l.len() <= 80), "{text}");
             let document = Document::parse(&text).unwrap();
             let read = read_structures(&document).remove(0).unwrap();
@@ -242,7 +241,7 @@ mod random_recipes {
             if let Ok(built) = build(&recipe, &Progress::default()) {
                 for cell in &built.cells {
                     prop_assert_eq!(cell.structure.charge(), Some(0.into()));
-                    let text = write(&cell.structure, &Description { tolerance: TOLERANCE, ..Description::default() }).unwrap();
+                    let text = write(&cell.structure, &Description::default()).unwrap();
                     let document = Document::parse(&text).unwrap();
                     let read = read_structures(&document).remove(0).unwrap();
                     prop_assert_eq!(group(&read.structure), group(&cell.structure));

@@ -3,7 +3,6 @@
 use super::{Outcome, Radii, json, output, print, progress};
 use clap::ValueEnum;
 use interstice::build::{Built, build};
-use interstice::crystal::symmetry::TOLERANCE;
 use interstice::error::Error;
 use interstice::format::{cif, xyz};
 use interstice::metric::Sizing;
@@ -219,10 +218,11 @@ fn cell_files(built: &Built) -> Result<Vec<(String, String)>, Error> {
                             env!("CARGO_PKG_VERSION"),
                             built.recipe.seed
                         ),
-                        date: source_date(),
                         notes: cells::notes(built, cell),
-                        p1: built.recipe.p1,
-                        tolerance: TOLERANCE,
+                        explicit: built.recipe.p1,
+                        // No file holds the time of the run, so that bytes repeat.
+                        source_date: std::env::var("SOURCE_DATE_EPOCH").ok(),
+                        ..cif::Description::default()
                     },
                 )?,
             };
@@ -230,19 +230,4 @@ fn cell_files(built: &Built) -> Result<Vec<(String, String)>, Error> {
         }
     }
     Ok(files)
-}
-
-/// The date of `SOURCE_DATE_EPOCH`, if it is set: no file holds the time of the run, so that bytes repeat.
-fn source_date() -> Option<String> {
-    let seconds: i64 = std::env::var("SOURCE_DATE_EPOCH").ok()?.parse().ok()?;
-    // Days to a date of the proleptic Gregorian calendar: H. Hinnant, chrono-compatible low-level date algorithms.
-    let z = seconds.div_euclid(86_400) + 719_468;
-    let era = z.div_euclid(146_097);
-    let day_of_era = z.rem_euclid(146_097);
-    let year_of_era = (day_of_era - day_of_era / 1460 + day_of_era / 36_524 - day_of_era / 146_096) / 365;
-    let day_of_year = day_of_era - (365 * year_of_era + year_of_era / 4 - year_of_era / 100);
-    let m = (5 * day_of_year + 2) / 153;
-    let (day, month) = (day_of_year - (153 * m + 2) / 5 + 1, if m < 10 { m + 3 } else { m - 9 });
-    let year = year_of_era + era * 400 + i64::from(month <= 2);
-    (0..=9999).contains(&year).then(|| format!("{year:04}-{month:02}-{day:02}"))
 }

@@ -4,7 +4,7 @@ use super::{Outcome, Radii, print};
 use interstice::crystal::Structure;
 use interstice::crystal::symmetry::{TOLERANCE, symmetrise};
 use interstice::error::Error;
-use interstice::format::cif::{CifError, Document, ReadStructure, document, read_structures};
+use interstice::format::cif::{Diagnostic, Document, ReadStructure, document, read_structures};
 use interstice::ion::formula::{Formula, Named, Part};
 use interstice::ion::oxidation;
 use interstice::report::vetting::{Vetted, labels, text};
@@ -53,7 +53,7 @@ pub fn run(arguments: &Arguments) -> Result<Outcome, Error> {
 fn vet(path: &str, arguments: &Arguments) -> Result<bool, Error> {
     let bytes =
         std::fs::read(path).map_err(|source| Error::File { action: "cannot read", path: path.into(), source })?;
-    let fail = |fault: CifError, source: &str| Error::Cif {
+    let fail = |fault: Diagnostic, source: &str| Error::Cif {
         path: path.into(),
         excerpt: source.lines().nth(fault.line - 1).unwrap_or_default().to_string(),
         fault,

@@ -4,6 +4,7 @@
 
 pub mod lattice;
 pub mod neighbours;
+mod setting;
 pub mod structure;
 pub mod supercell;
 pub mod symmetry;

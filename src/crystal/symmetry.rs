@@ -3,7 +3,7 @@
 //! Operations act on fractional coordinates, x′ = W x + w. The standard setting is moyo's: origin choice 2,
 //! hexagonal axes for rhombohedral groups, unique axis b.
 
-use super::{Fractional, Lattice, Occupant, Site, Structure};
+use super::{Fractional, Lattice, Occupant, Site, Structure, setting};
 use crate::ion::Amount;
 use moyo::MoyoDataset;
 use moyo::base::{AngleTolerance, Cell};
@@ -147,7 +147,8 @@ impl SpaceGroup {
             number: entry.number,
             hall_number,
             hermann_mauguin: spaced_symbol(&entry),
-            hall: entry.hall_symbol.to_string(),
+            // moyo's table writes `=` for the double quote of the standard symbol.
+            hall: entry.hall_symbol.replace('=', "\""),
             crystal_system: system_name(&class),
             operations: operations.iter().map(Operation::from).collect(),
         })
@@ -251,7 +252,8 @@ pub fn primitive(
 }
 
 /// The space group of a structure, its standard cell and asymmetric unit. Sites are alike when they hold the same
-/// species in the same shares.
+/// species in the same shares. A cell that already stands in the standard setting is left in it, so that a structure
+/// written and read again is not turned over into another, equivalent description.
 ///
 /// # Errors
 /// As [`operations`].
@@ -261,7 +263,13 @@ pub fn symmetrise(structure: &Structure, tolerance: f64) -> Result<Symmetrised, 
     let dataset = dataset(&structure.lattice, &positions, &kinds, tolerance)?;
     let group = SpaceGroup::from_hall_number(dataset.hall_number)
         .ok_or_else(|| not_found(tolerance, &format!("unknown setting {}", dataset.hall_number)))?;
-    let lattice = Lattice::from_basis(dataset.std_cell.lattice.basis).map_err(|e| not_found(tolerance, &e))?;
+    let found: Vec<Operation> = dataset.operations.iter().map(Operation::from).collect();
+    let keep = setting::is_standard(&structure.lattice, &found, &group.operations, tolerance);
+    let lattice = if keep {
+        structure.lattice.clone()
+    } else {
+        Lattice::from_basis(dataset.std_cell.lattice.basis).map_err(|e| not_found(tolerance, &e))?
+    };
     let standard: Vec<_> = dataset.std_cell.positions.iter().map(|p| Fractional(*p)).collect();
     let to_standard =
         dataset.std_linear.try_inverse().ok_or_else(|| not_found(tolerance, &"singular transformation"))?;
@@ -273,14 +281,19 @@ pub fn symmetrise(structure: &Structure, tolerance: f64) -> Result<Symmetrised, 
             .filter(|&k| dataset.std_cell.numbers[k] == kinds[input_site])
             .min_by(|&p, &q| lattice.distance(&rough, &standard[p]).total_cmp(&lattice.distance(&rough, &standard[q])))
             .ok_or_else(|| not_found(tolerance, &"a site was lost on standardising"))?;
-        let exact = on_symmetry_element(&lattice, &group.operations, &standard[refined]);
+        let start = if keep { positions[input_site] } else { standard[refined] };
+        let exact = on_symmetry_element(&lattice, &group.operations, &start);
         let images = orbit(&lattice, &group.operations, &exact, MIN_SEPARATION);
         let position = images.iter().copied().min_by(preferred).unwrap_or(exact);
+        let mut wyckoff = (dataset.wyckoffs[input_site], dataset.site_symmetry_symbols[input_site].clone());
+        if keep && let Some(here) = setting::wyckoff_position(group.hall_number, &images) {
+            wyckoff = (here.letter, here.site_symmetry.to_owned());
+        }
         orbits.push(OrbitSite {
             site: Site { position, occupants: occupants[kinds[input_site] as usize].clone() },
             multiplicity: images.len(),
-            wyckoff: dataset.wyckoffs[input_site],
-            site_symmetry: dataset.site_symmetry_symbols[input_site].clone(),
+            wyckoff: wyckoff.0,
+            site_symmetry: wyckoff.1,
             input_site,
         });
     }

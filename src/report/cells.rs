@@ -181,7 +181,6 @@ pub fn notes(built: &Built, cell: &Cell) -> Vec<String> {
         .map(|s| format!("{} {} in {}", s.amount, s.ion, decision.seating.offers[s.offer].kind))
         .collect();
     let mut notes = vec![
-        HYPOTHESIS.to_string(),
         format!(
             "Composition {}; packing {}; seats per formula unit: {}.",
             decision.composition,

@@ -60,15 +60,13 @@ def with_gemmi(path, said):
     if abs(density / float(block.find_value("_exptl_crystal_density_diffrn")) - 1) > 2e-3:
         fail(path, f"density by gemmi {density}")
     matrix = numpy.array(small.cell.orth.mat.tolist())
-    shortest = min(
-        numpy.linalg.norm(matrix @ (p - q + numpy.array([i, j, k])))
-        for n, p in enumerate(places[:40])
-        for m, q in enumerate(places)
-        for i in (-1, 0, 1)
-        for j in (-1, 0, 1)
-        for k in (-1, 0, 1)
-        if (m, i, j, k) != (n, 0, 0, 0)
-    )
+    near = numpy.array([[i, j, k] for i in (-1, 0, 1) for j in (-1, 0, 1) for k in (-1, 0, 1)])
+    shortest = numpy.inf
+    for n, place in enumerate(places):
+        gaps = numpy.array(places)[:, None, :] - place + near[None, :, :]
+        lengths = numpy.linalg.norm(gaps @ matrix.T, axis=2)
+        lengths[n, 13] = numpy.inf
+        shortest = min(shortest, lengths.min())
     if said["shortest"] and abs(shortest - said["shortest"]) > 2e-3:
         fail(path, f"shortest distance {shortest:.4f} by gemmi's cell, {said['shortest']:.4f} by us")
     return small, atoms, number
@@ -100,7 +98,8 @@ def with_pycifrw(path, small):
 
 def said_by_us(binary, path):
     run = subprocess.run([binary, "vet", "--json", path], capture_output=True, text=True)
-    if run.returncode != 0:
+    # 1: a rule is broken, as in some real structures; the file was read all the same.
+    if run.returncode not in (0, 1):
         fail(path, f"our own vet ends with {run.returncode}: {run.stdout}{run.stderr}")
         return None
     return json.loads(run.stdout.splitlines()[0])

@@ -1,6 +1,5 @@
 //! A CIF as data blocks of names and values; knows nothing of atoms.
 
-use super::CifError;
 use super::lexer::{Token, token};
 use crate::ion::Amount;
 use std::borrow::Cow;
@@ -11,24 +10,89 @@ pub const MAX_BYTES: usize = 1 << 30;
 /// A value and where it stands.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
 pub struct Value<'s> {
-    /// Text without delimiters.
-    pub text: &'s str,
+    text: &'s str,
     /// Whether it was quoted or a text field: then `?` and `.` are ordinary characters.
-    pub quoted: bool,
+    quoted: bool,
+    offset: usize,
+}
+
+/// How grave a diagnostic is.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Severity {
+    /// The file or block cannot be used.
+    Error,
+    /// Something was taken otherwise than written.
+    Warning,
+}
+
+/// A fault or an assumption, with its place.
+#[derive(Clone, Debug, PartialEq, Eq, thiserror::Error)]
+#[error("line {line}, column {column}: {message}")]
+pub struct Diagnostic {
+    /// How grave.
+    pub severity: Severity,
+    /// Name of the kind of fault.
+    pub code: &'static str,
     /// Byte offset in the source.
     pub offset: usize,
+    /// Bytes concerned.
+    pub len: usize,
+    /// From 1.
+    pub line: usize,
+    /// In characters, from 1.
+    pub column: usize,
+    /// What was found and what would be right, or what was assumed.
+    pub message: String,
+}
+
+impl Diagnostic {
+    /// A fault of syntax at a byte offset of a source.
+    fn at(source: &str, offset: usize, message: impl Into<String>) -> Self {
+        let (line, column) = place(source, offset);
+        Self { severity: Severity::Error, code: "cif::syntax", offset, len: 1, line, column, message: message.into() }
+    }
+}
+
+/// Line and column (in characters) of a byte offset, both from 1.
+fn place(source: &str, offset: usize) -> (usize, usize) {
+    let head = source.get(..offset.min(source.len())).unwrap_or_default();
+    let line_start = head.rfind('\n').map_or(0, |i| i + 1);
+    (head.bytes().filter(|b| *b == b'\n').count() + 1, head[line_start..].chars().count() + 1)
 }
 
 /// A number with its standard uncertainty.
 #[derive(Clone, Copy, Debug, PartialEq)]
-pub struct Number {
+pub struct Number<'s> {
     /// The value.
     pub value: f64,
     /// Standard uncertainty in the unit of the value, if written.
     pub su: Option<f64>,
+    digits: &'s str,
+}
+
+impl Number<'_> {
+    /// The exact decimal that a number without exponent writes, its uncertainty left out.
+    pub fn exact(&self) -> Option<Amount> {
+        let (negative, digits) = match self.digits.strip_prefix('-') {
+            Some(rest) => (true, rest),
+            None => (false, self.digits.strip_prefix('+').unwrap_or(self.digits)),
+        };
+        let amount = crate::ion::amount::parse(digits)?;
+        Some(if negative { -amount } else { amount })
+    }
 }
 
 impl<'s> Value<'s> {
+    /// Text without delimiters.
+    pub fn text(&self) -> Cow<'s, str> {
+        Cow::Borrowed(self.text)
+    }
+
+    /// Byte offset in the source.
+    pub fn place(&self) -> usize {
+        self.offset
+    }
+
     /// A bare `?`: not known.
     pub fn is_unknown(&self) -> bool {
         !self.quoted && self.text == "?"
@@ -39,13 +103,8 @@ impl<'s> Value<'s> {
         !self.quoted && self.text == "."
     }
 
-    /// Neither of the two absences.
-    pub fn is_given(&self) -> bool {
-        !self.is_unknown() && !self.is_inapplicable()
-    }
-
     /// The number that the value writes, `34.5(12)` or `-1.2E3`; International Tables G, 2.2.7.4.7.1 (paragraph 19).
-    pub fn number(&self) -> Option<Number> {
+    pub fn number(&self) -> Option<Number<'s>> {
         let (digits, su) = match self.text.split_once('(') {
             Some((digits, rest)) => (digits, Some(rest.strip_suffix(')')?)),
             None => (self.text, None),
@@ -63,18 +122,7 @@ impl<'s> Value<'s> {
             Some(_) => return None,
             None => None,
         };
-        value.is_finite().then_some(Number { value, su })
-    }
-
-    /// The exact decimal that a number without exponent writes, its uncertainty left out.
-    pub fn exact(&self) -> Option<Amount> {
-        let digits = self.text.split('(').next()?;
-        let (negative, digits) = match digits.strip_prefix('-') {
-            Some(rest) => (true, rest),
-            None => (false, digits.strip_prefix('+').unwrap_or(digits)),
-        };
-        let amount = crate::ion::amount::parse(digits)?;
-        Some(if negative { -amount } else { amount })
+        value.is_finite().then_some(Number { value, su, digits })
     }
 }
 
@@ -93,47 +141,54 @@ impl<'s> Loop<'s> {
         names.iter().find_map(|name| self.names.iter().position(|n| same_name(n, name)))
     }
 
+    /// Number of rows.
+    pub fn n_rows(&self) -> usize {
+        self.values.len() / self.names.len().max(1)
+    }
+
+    /// The value in a row and column, both from 0 and in range.
+    pub fn value(&self, row: usize, column: usize) -> &Value<'s> {
+        &self.values[row * self.names.len() + column]
+    }
+
     /// Rows in order.
     pub fn rows(&self) -> impl ExactSizeIterator<Item = &[Value<'s>]> {
         self.values.chunks_exact(self.names.len().max(1))
     }
 }
 
-/// A data block.
+/// A data block. A name with a single value is a loop of one column and one row.
 #[derive(Clone, Debug, PartialEq, Eq)]
 pub struct Block<'s> {
-    /// Its code.
-    pub code: &'s str,
-    /// Offset of its heading.
-    pub offset: usize,
-    /// Names with single values.
-    pub items: Vec<(&'s str, Value<'s>)>,
-    /// Loops.
+    code: &'s str,
+    offset: usize,
+    /// Loops and single items in order.
     pub loops: Vec<Loop<'s>>,
 }
 
 impl<'s> Block<'s> {
-    /// The value of the first of these names that the block has, alone or in a loop of one row.
-    pub fn value(&self, names: &[&str]) -> Option<Value<'s>> {
-        names.iter().find_map(|name| {
-            let single = self.items.iter().find(|(n, _)| same_name(n, name)).map(|(_, v)| *v);
-            single.or_else(|| {
-                let of_one = |l: &&Loop<'s>| l.values.len() == l.names.len() && l.column(&[name]).is_some();
-                self.loops.iter().find(of_one).and_then(|l| Some(l.values[l.column(&[name])?]))
-            })
-        })
+    /// Its code.
+    pub fn code(&self) -> &'s str {
+        self.code
     }
 
-    /// The loop that has one of these names; single items of the same category count as a loop of one row.
-    pub fn table(&self, names: &[&str]) -> Option<Cow<'_, Loop<'s>>> {
-        if let Some(found) = self.loops.iter().find(|l| l.column(names).is_some()) {
-            return Some(Cow::Borrowed(found));
-        }
-        let (name, _) = self.items.iter().find(|(n, _)| names.iter().any(|m| same_name(n, m)))?;
-        // The category is what the asked names share: everything of the block whose name begins alike.
-        let category: String = plain(name).rsplitn(2, '_').last().unwrap_or_default().to_string();
-        let (names, values) = self.items.iter().filter(|(n, _)| plain(n).starts_with(&category)).copied().unzip();
-        Some(Cow::Owned(Loop { names, values }))
+    /// Offset of its heading.
+    pub fn place(&self) -> usize {
+        self.offset
+    }
+
+    /// The value of the first of these names that the block has, alone or in a loop of one row.
+    pub fn value(&self, names: &[&str]) -> Option<&Value<'s>> {
+        let of_one = |name: &str| {
+            let found = self.loops.iter().filter(|l| l.n_rows() == 1).find_map(|l| l.column(&[name]).map(|c| (l, c)));
+            found.map(|(l, column)| l.value(0, column))
+        };
+        names.iter().find_map(|name| of_one(name))
+    }
+
+    /// The loop that has the first of these names that the block has.
+    pub fn table(&self, names: &[&str]) -> Option<&Loop<'s>> {
+        names.iter().find_map(|name| self.loops.iter().find(|l| l.column(&[name]).is_some()))
     }
 }
 
@@ -155,16 +210,12 @@ fn same_name(a: &str, b: &str) -> bool {
         })
 }
 
-fn plain(name: &str) -> String {
-    name.to_ascii_lowercase().replace('.', "_")
-}
-
 /// The text of a file: UTF-8 (or Latin-1 where it is none), with line ends turned into LF and a byte order mark dropped.
 ///
 /// # Errors
-/// [`CifError`] for what is no text: NUL bytes, UTF-16, a file over [`MAX_BYTES`].
-pub fn decode(bytes: &[u8]) -> Result<String, CifError> {
-    let fail = |offset, message: &str| CifError { offset, line: 1, column: 1, message: message.into() };
+/// [`Diagnostic`] for what is no text: NUL bytes, UTF-16, a file over [`MAX_BYTES`].
+pub fn decode(bytes: &[u8]) -> Result<String, Diagnostic> {
+    let fail = |offset, message: &str| Diagnostic { offset, ..Diagnostic::at("", 0, message) };
     if bytes.len() > MAX_BYTES {
         return Err(fail(0, "the file is larger than 1 GiB"));
     }
@@ -186,13 +237,13 @@ impl<'s> Document<'s> {
     /// Reads a decoded text. Linear in its length.
     ///
     /// # Errors
-    /// [`CifError`] with the place of the first fault.
-    pub fn parse(source: &'s str) -> Result<Self, CifError> {
+    /// [`Diagnostic`] with the place of the first fault.
+    pub fn parse(source: &'s str) -> Result<Self, Diagnostic> {
         let mut reader = Reader { source, rest: source, line_start: true, ahead: None };
         let mut blocks: Vec<Block<'s>> = Vec::new();
         let lowercase = source.trim_start().get(..5).unwrap_or_default().to_ascii_lowercase();
         if lowercase.starts_with("<!") || lowercase.starts_with("<html") {
-            return Err(CifError::at(source, 0, "this is no CIF: it looks like a web page"));
+            return Err(Diagnostic::at(source, 0, "this is no CIF: it looks like a web page"));
         }
         while let Some((token, offset)) = reader.next()? {
             match token {
@@ -200,7 +251,7 @@ impl<'s> Document<'s> {
                     if blocks.iter().any(|b| b.code.eq_ignore_ascii_case(code)) {
                         return Err(reader.fault(offset, format!("a block `{code}` occurs before; codes must differ")));
                     }
-                    blocks.push(Block { code, offset, items: Vec::new(), loops: Vec::new() });
+                    blocks.push(Block { code, offset, loops: Vec::new() });
                 }
                 Token::Reserved(word) => {
                     return Err(reader.fault(offset, format!("`{word}` is STAR, not CIF")));
@@ -219,9 +270,14 @@ impl<'s> Document<'s> {
         Ok(Self { source, blocks })
     }
 
-    /// A fault at an offset of this document.
-    pub fn fault(&self, offset: usize, message: impl Into<String>) -> CifError {
-        CifError::at(self.source, offset, message)
+    /// A fault of the whole at an offset.
+    pub fn fault(&self, offset: usize, message: impl Into<String>) -> Diagnostic {
+        Diagnostic::at(self.source, offset, message)
+    }
+
+    /// Line and column (in characters) of a byte offset, both from 1.
+    pub fn place(&self, offset: usize) -> (usize, usize) {
+        place(self.source, offset)
     }
 }
 
@@ -233,11 +289,11 @@ struct Reader<'s> {
 }
 
 impl<'s> Reader<'s> {
-    fn fault(&self, offset: usize, message: impl Into<String>) -> CifError {
-        CifError::at(self.source, offset, message)
+    fn fault(&self, offset: usize, message: impl Into<String>) -> Diagnostic {
+        Diagnostic::at(self.source, offset, message)
     }
 
-    fn next(&mut self) -> Result<Option<(Token<'s>, usize)>, CifError> {
+    fn next(&mut self) -> Result<Option<(Token<'s>, usize)>, Diagnostic> {
         if let Some(found) = self.ahead.take() {
             return Ok(Some(found));
         }
@@ -257,21 +313,22 @@ impl<'s> Reader<'s> {
         }
     }
 
-    fn peek(&mut self) -> Result<Option<Token<'s>>, CifError> {
+    fn peek(&mut self) -> Result<Option<Token<'s>>, Diagnostic> {
         if self.ahead.is_none() {
             self.ahead = self.next()?;
         }
         Ok(self.ahead.map(|(token, _)| token))
     }
 
-    fn item(&mut self, block: &mut Block<'s>, token: Token<'s>, offset: usize) -> Result<(), CifError> {
+    fn item(&mut self, block: &mut Block<'s>, token: Token<'s>, offset: usize) -> Result<(), Diagnostic> {
         match token {
             Token::Name(name) => {
                 self.unused(block, name, offset)?;
                 match self.peek()? {
                     Some(next) if value(next, 0).is_some() => {
                         if let Some((next, at)) = self.next()? {
-                            block.items.extend(value(next, at).map(|v| (name, v)));
+                            let values = value(next, at).into_iter().collect();
+                            block.loops.push(Loop { names: vec![name], values });
                         }
                         Ok(())
                     }
@@ -283,7 +340,7 @@ impl<'s> Reader<'s> {
         }
     }
 
-    fn loop_(&mut self, block: &mut Block<'s>, offset: usize) -> Result<(), CifError> {
+    fn loop_(&mut self, block: &mut Block<'s>, offset: usize) -> Result<(), Diagnostic> {
         let mut found = Loop { names: Vec::new(), values: Vec::new() };
         while let Some(Token::Name(name)) = self.peek()? {
             let at = self.next()?.map_or(offset, |(_, at)| at);
@@ -316,9 +373,8 @@ impl<'s> Reader<'s> {
         Ok(())
     }
 
-    fn unused(&self, block: &Block<'s>, name: &str, offset: usize) -> Result<(), CifError> {
-        let used = block.items.iter().any(|(n, _)| same_name(n, name))
-            || block.loops.iter().any(|l| l.column(&[name]).is_some());
+    fn unused(&self, block: &Block<'s>, name: &str, offset: usize) -> Result<(), Diagnostic> {
+        let used = block.loops.iter().any(|l| l.column(&[name]).is_some());
         if used { Err(self.fault(offset, format!("`{name}` occurs before in this block"))) } else { Ok(()) }
     }
 }
@@ -345,12 +401,12 @@ mod tests {
         let block = &document.blocks[0];
         let n = block.value(&["_x_y"]).unwrap().number().unwrap();
         assert!(n.value == 1.5 && (n.su.unwrap() - 0.3).abs() < 1e-12);
-        assert_eq!(block.value(&["_T"]).unwrap().text, "one\ntwo");
+        assert_eq!(block.value(&["_T"]).unwrap().text(), "one\ntwo");
         let table = block.table(&["_p"]).unwrap();
         let rows: Vec<_> = table.rows().collect();
         assert_eq!((rows[0][0].text, rows[1][0].text), ("a b", "c'd"));
         assert!(rows[0][1].is_unknown() && rows[1][1].is_inapplicable());
-        assert_eq!(block.value(&["_n"]).unwrap().text, "O'neil");
+        assert_eq!(block.value(&["_n"]).unwrap().text(), "O'neil");
     }
 
     /// International Tables G, 2.2.7.4.7.1: 34.5(12) = 34.5 ± 1.2 = 3.45E1(12).

@@ -1,370 +1,281 @@
-//! Writing a structure as CIF 1.1: pure ASCII, LF, the found space group in its standard setting, or P1.
+//! Writes a structure as CIF 1.1, the form that every reader takes: ASCII, LF, no deprecated names.
 //!
-//! Names and meanings: the core dictionary, version 3.4.0, in the underscore spelling. Nothing is invented: no
-//! uncertainties, no displacement parameters, no diffraction items. Volume, density, weight, formula and Z are computed
-//! from what is written.
+//! Data names and their meaning: core CIF dictionary 3.4.0. Nothing is invented: no standard uncertainties, no
+//! displacement parameters, nothing that only a diffraction experiment could tell.
 
-use crate::crystal::symmetry::{self, OrbitSite, SpaceGroup, SymmetryError};
-use crate::crystal::{Lattice, Parameters, Site, Structure};
-use crate::ion::amount::to_f64;
-use crate::ion::{Amount, Element, Species};
-use num_integer::Integer;
+mod atoms;
+mod digits;
+mod formula;
+mod text;
+
+use super::citation::Citation;
+use crate::crystal::Structure;
+use crate::crystal::lattice::LatticeError;
+use crate::crystal::symmetry::{self, SpaceGroup, SymmetryError, TOLERANCE};
+use crate::ion::{Amount, Species};
+use atoms::AtomList;
+use digits::{WrittenCell, rounded, rounded_on_element};
 use num_traits::{One, Zero};
-use std::collections::BTreeMap;
-use std::fmt::Write as _;
+use text::{ascii, quoted, text_field};
 
-/// What is written beside the structure itself.
-#[derive(Clone, Debug, Default)]
+/// Longest block code of CIF 1.1 (file syntax, paragraph 30).
+const MAX_BLOCK_CODE: usize = 75;
+
+/// Column, from 0, in which the values of single items begin; longer than any name that is written on one line.
+const VALUE_COLUMN: usize = 33;
+
+/// Longest line of ours; the standard allows 2048.
+const MAX_LINE: usize = 80;
+
+/// Largest oxidation number that the dictionary admits, in e.
+const MAX_OXIDATION: u8 = 8;
+
+/// g/cm³ in u/Å³: the atomic mass constant, 1.66053906660e-27 kg (CODATA 2018, value from memory).
+const DENSITY_UNIT: f64 = 1.660_539_066_60;
+
+/// Stands in every file: what a generated cell is, and what it is not.
+pub const CAUTION: &str = "Generated model, not the result of an experiment or a refinement: a starting point for \
+    calculations. It is a hypothesis, and no proof that such a phase exists.";
+
+/// What a file says beside the structure itself.
+#[derive(Clone, Debug)]
 pub struct Description {
-    /// Block code: letters, digits, hyphens.
+    /// Name of the data block. Characters that a block code cannot hold become `_`.
     pub block_code: String,
-    /// How the file came to be: program, version, seed.
+    /// Common name of the compound.
+    pub name: Option<String>,
+    /// How the cell was made: program, version, method, seed.
     pub method: String,
-    /// Date `YYYY-MM-DD`, if one is to be written.
-    pub date: Option<String>,
-    /// Paragraphs of text for the reader.
+    /// Paragraphs for the reader of the file.
     pub notes: Vec<String>,
-    /// Write all atoms in P1 instead of the space group found.
-    pub p1: bool,
-    /// Distance tolerance of the symmetry search, Å.
+    /// Published sources of the structure that this one was made from.
+    pub citations: Vec<Citation>,
+    /// Every atom of the cell in P 1, instead of the asymmetric unit of the space group found.
+    pub explicit: bool,
+    /// Distance within which positions count as symmetric images, Å; not used for an explicit file.
     pub tolerance: f64,
+    /// Seconds since 1970-01-01T00:00:00Z in decimal, as `SOURCE_DATE_EPOCH` gives them; without it the file bears no
+    /// date, so that its bytes can be made again.
+    pub source_date: Option<String>,
 }
 
-/// Grams per cubic centimetre of one u per Å³ (CODATA 2018).
-const DENSITY: f64 = 1.660_539_066_6;
+impl Default for Description {
+    fn default() -> Self {
+        Self {
+            block_code: "structure".into(),
+            name: None,
+            method: concat!("interstice ", env!("CARGO_PKG_VERSION")).into(),
+            notes: Vec::new(),
+            citations: Vec::new(),
+            explicit: false,
+            tolerance: TOLERANCE,
+            source_date: None,
+        }
+    }
+}
 
-/// Column of the values in the list of single items.
-const COLUMN: usize = 33;
+/// Why a structure cannot be written.
+#[derive(Clone, Debug, PartialEq, thiserror::Error)]
+pub enum WriteError {
+    /// No space group.
+    #[error(transparent)]
+    Symmetry(#[from] SymmetryError),
+    /// The cell does not survive rounding to the digits that are written.
+    #[error("the cell cannot be written with 6 decimals: {0}")]
+    Lattice(#[from] LatticeError),
+    /// A site that holds nothing, or more than it can.
+    #[error("site {site} has occupancies that add up to {total}; they must add up to more than 0 and at most 1")]
+    Occupancy {
+        /// Index from 1.
+        site: usize,
+        /// The sum.
+        total: Amount,
+    },
+    /// A coordinate that is no number.
+    #[error("site {site} has a coordinate that is not a finite number")]
+    Coordinate {
+        /// Index from 1.
+        site: usize,
+    },
+    /// An oxidation number outside the dictionary's range.
+    #[error("`{species}` has a charge beyond the -8 to 8 e that a CIF can state")]
+    Charge {
+        /// Which.
+        species: Species,
+    },
+    /// A date that is no number of seconds.
+    #[error("`{text}` is no time; `SOURCE_DATE_EPOCH` is a whole number of seconds from 0 to 253402300799")]
+    Date {
+        /// As given.
+        text: String,
+    },
+}
 
-/// Writes the structure.
+/// The structure as one CIF 1.1 data block: in the standard setting of its space group with its asymmetric unit, or
+/// atom by atom in P 1 ([`Description::explicit`]).
+///
+/// Lengths and angles have 6 decimals, coordinates 8; volume, formula, weight, Z and density follow from what is
+/// written. Occupancies are exact decimals where 8 places allow, else rounded so that each site's sum is right.
 ///
 /// # Errors
-/// [`SymmetryError`] when the space group cannot be found (never with `p1`).
-pub fn write(structure: &Structure, description: &Description) -> Result<String, SymmetryError> {
-    let (group, lattice, orbits) = if description.p1 {
-        let orbits = structure.sites.iter().enumerate().map(|(input_site, site)| OrbitSite {
-            site: site.clone(),
-            multiplicity: 1,
-            wyckoff: 'a',
-            site_symmetry: "1".into(),
-            input_site,
-        });
-        (SpaceGroup::p1(), structure.lattice.clone(), orbits.collect())
-    } else {
-        let found = symmetry::symmetrise(structure, description.tolerance)?;
-        (found.group, found.lattice, found.orbits)
-    };
-    let mut out = String::with_capacity(1000 + 60 * orbits.len());
-    heading(&mut out, description);
-    chemistry(&mut out, &orbits);
-    cell(&mut out, &lattice, &group, &orbits);
-    space_group(&mut out, &group);
-    atom_types(&mut out, &orbits);
-    atom_sites(&mut out, &orbits);
-    Ok(out)
-}
-
-fn item(out: &mut String, name: &str, value: &str) {
-    let _ = writeln!(out, "{name:<COLUMN$}{value}");
-}
-
-/// A value as the grammar needs it: bare, quoted, or a text field.
-fn quoted(text: &str) -> String {
-    let reserved = ["data_", "save_", "loop_", "stop_", "global_"];
-    let lower = text.to_ascii_lowercase();
-    let bare = !text.is_empty()
-        && !text.starts_with(['_', '#', '$', '\'', '"', '[', ']', ';'])
-        && !text.contains(char::is_whitespace)
-        && !reserved.iter().any(|r| lower.starts_with(r))
-        && text != "?"
-        && text != ".";
-    if bare {
-        text.into()
-    } else if !text.contains(['\'', '\n']) {
-        format!("'{text}'")
-    } else if !text.contains(['"', '\n']) {
-        format!("\"{text}\"")
-    } else {
-        format!("\n;{}\n;", text.replace("\n;", "\n ;"))
-    }
-}
-
-/// ASCII for every character: what a CIF 1.1 cannot hold is spelt out.
-fn ascii(text: &str) -> String {
-    let mut out = String::with_capacity(text.len());
-    for c in text.chars() {
-        match c {
-            'Å' => out.push_str("\\%A"),
-            '□' => out.push_str("[]"),
-            '–' | '−' => out.push('-'),
-            c if c.is_ascii() && (!c.is_control() || c == '\n') => out.push(c),
-            _ => out.push('?'),
+/// [`WriteError`]: no atoms, coinciding sites, impossible occupancies or charges, a bad date.
+pub fn write(structure: &Structure, description: &Description) -> Result<String, WriteError> {
+    check(structure)?;
+    let mut atoms = AtomList::default();
+    if description.explicit {
+        for site in &structure.sites {
+            atoms.push(rounded(&site.position), &site.occupants, None);
         }
+        let cell = WrittenCell::free(&structure.lattice);
+        return assemble(&SpaceGroup::p1(), &cell, &atoms, description);
     }
-    out
+    let found = symmetry::symmetrise(structure, description.tolerance)?;
+    for orbit in &found.orbits {
+        let position = rounded_on_element(&found.lattice, &found.group.operations, &orbit.site.position);
+        atoms.push(position, &orbit.site.occupants, Some((orbit.multiplicity, orbit.wyckoff)));
+    }
+    let cell = WrittenCell::constrained(&found.lattice, found.group.crystal_system);
+    assemble(&found.group, &cell, &atoms, description)
 }
 
-/// Lines of at most 80 characters.
-fn wrapped(text: &str) -> String {
-    let mut out = String::new();
-    let mut length = 0;
-    for word in text.split_whitespace() {
-        if length > 0 && length + 1 + word.len() > 78 {
-            out.push('\n');
-            length = 0;
+fn check(structure: &Structure) -> Result<(), WriteError> {
+    if structure.sites.is_empty() {
+        return Err(SymmetryError::Empty.into());
+    }
+    for (idx, site) in structure.sites.iter().enumerate() {
+        if !site.position.0.iter().all(|x| x.is_finite()) {
+            return Err(WriteError::Coordinate { site: idx + 1 });
         }
-        if length > 0 {
-            out.push(' ');
-            length += 1;
+        let full = site.occupants.len() == 1 && site.occupants[0].occupancy.is_one();
+        let total = if full { Amount::one() } else { site.occupants.iter().map(|o| o.occupancy).sum() };
+        let positive = site.occupants.iter().all(|o| o.occupancy > Amount::zero());
+        if !positive || total <= Amount::zero() || total > Amount::one() {
+            return Err(WriteError::Occupancy { site: idx + 1, total });
         }
-        out.push_str(word);
-        length += word.len();
-    }
-    out
-}
-
-fn heading(out: &mut String, description: &Description) {
-    let code: String = description
-        .block_code
-        .chars()
-        .filter(|c| c.is_ascii_alphanumeric() || *c == '-' || *c == '_')
-        .take(75)
-        .collect();
-    let _ = writeln!(out, "#\\#CIF_1.1\ndata_{}", if code.is_empty() { "cell" } else { &code });
-    item(out, "_audit_creation_method", &quoted(&ascii(&description.method)));
-    if let Some(date) = &description.date {
-        item(out, "_audit_creation_date", &quoted(date));
-    }
-    item(out, "_audit_conform_dict_name", "CIF_CORE");
-    item(out, "_audit_conform_dict_version", "3.4.0");
-    if !description.notes.is_empty() {
-        let text: Vec<String> = description.notes.iter().map(|n| wrapped(&ascii(n))).collect();
-        let _ = writeln!(out, "_publ_section_comment\n;\n{}\n;", text.join("\n").replace("\n;", "\n ;"));
-    }
-}
-
-/// Amounts in the conventional cell.
-fn contents(orbits: &[OrbitSite]) -> (BTreeMap<Species, Amount>, BTreeMap<Element, Amount>) {
-    let (mut species, mut elements) = (BTreeMap::new(), BTreeMap::new());
-    for orbit in orbits {
-        for occupant in &orbit.site.occupants {
-            let amount = occupant.occupancy * orbit.multiplicity as i128;
-            let plain = Species { spin: None, ..occupant.species };
-            *species.entry(plain).or_insert_with(Amount::zero) += amount;
-            *elements.entry(occupant.species.element).or_insert_with(Amount::zero) += amount;
-        }
-    }
-    (species, elements)
-}
-
-/// Formula units of the cell: the greatest common divisor of whole amounts; for fractional ones, of their whole parts'
-/// site counts, so that the sum formula keeps the dopant's fraction.
-fn formula_units(elements: &BTreeMap<Element, Amount>, orbits: &[OrbitSite]) -> i128 {
-    if elements.values().all(Amount::is_integer) {
-        elements.values().fold(0, |d, a| d.gcd(a.numer())).max(1)
-    } else {
-        orbits.iter().fold(0, |d: i128, o| d.gcd(&(o.multiplicity as i128))).max(1)
-    }
-}
-
-/// A decimal of at most 8 digits without trailing zeros.
-fn decimal(amount: &Amount) -> String {
-    let text = format!("{:.8}", to_f64(amount));
-    text.trim_end_matches('0').trim_end_matches('.').to_string()
-}
-
-fn chemistry(out: &mut String, orbits: &[OrbitSite]) {
-    let (species, elements) = contents(orbits);
-    let z = formula_units(&elements, orbits);
-    let term = |name: &str, amount: &Amount| {
-        let share = amount / z;
-        if share.is_one() { name.to_string() } else { format!("{name}{}", decimal(&share)) }
-    };
-    // Hill order: carbon, hydrogen, then the rest by symbol; without carbon strictly by symbol.
-    let mut order: Vec<(&Element, &Amount)> = elements.iter().collect();
-    let carbon = elements.keys().any(|e| e.symbol() == "C");
-    order.sort_by_key(|(e, _)| {
-        let first = if carbon {
-            match e.symbol() {
-                "C" => 0,
-                "H" => 1,
-                _ => 2,
+        for occupant in &site.occupants {
+            if occupant.species.charge.is_some_and(|q| q.unsigned_abs() > MAX_OXIDATION) {
+                return Err(WriteError::Charge { species: occupant.species });
             }
-        } else {
-            2
-        };
-        (first, e.symbol())
-    });
-    let sum: Vec<String> = order.iter().map(|(e, a)| term(e.symbol(), a)).collect();
-    item(out, "_chemical_formula_sum", &quoted(&sum.join(" ")));
-    if species.keys().all(|s| s.charge.is_some_and(|q| q != 0)) {
-        let mut ions: Vec<(Species, Amount)> = species.into_iter().collect();
-        ions.sort_by_key(|(s, _)| (s.charge < Some(0), s.element.symbol(), s.charge));
-        let moieties: Vec<String> = ions
-            .iter()
-            .map(|(s, amount)| {
-                let q = s.charge.unwrap_or_default();
-                let ion = format!("{} {}{}", s.element, q.abs(), if q < 0 { '-' } else { '+' });
-                let share = amount / z;
-                if share.is_one() { ion } else { format!("({ion}){}", decimal(&share)) }
-            })
-            .collect();
-        item(out, "_chemical_formula_moiety", &text_item(&moieties.join(", ")));
+        }
     }
-    item(out, "_chemical_formula_weight", &format!("{:.3}", weight(&elements) / z as f64));
+    Ok(())
 }
 
-/// A value that may be too long for its line.
-fn text_item(text: &str) -> String {
-    if text.len() + COLUMN > 78 { format!("\n;{}\n;", wrapped(text)) } else { quoted(text) }
-}
-
-fn weight(elements: &BTreeMap<Element, Amount>) -> f64 {
-    elements.iter().map(|(e, a)| e.weight() * to_f64(a)).sum()
-}
-
-/// The parameters with the equalities that the crystal system demands made exact, as they will be written.
-fn constrained(lattice: &Lattice, system: &str) -> Parameters {
-    let p = lattice.parameters();
-    let round = |x: f64| (x * 1e6).round() / 1e6;
-    let (a, b, c) = (round(p.a), round(p.b), round(p.c));
-    match system {
-        "cubic" => Parameters { a, b: a, c: a, alpha: 90.0, beta: 90.0, gamma: 90.0 },
-        "tetragonal" => Parameters { a, b: a, c, alpha: 90.0, beta: 90.0, gamma: 90.0 },
-        "hexagonal" | "trigonal" => Parameters { a, b: a, c, alpha: 90.0, beta: 90.0, gamma: 120.0 },
-        "orthorhombic" => Parameters { a, b, c, alpha: 90.0, beta: 90.0, gamma: 90.0 },
-        "monoclinic" => Parameters { a, b, c, alpha: 90.0, beta: round(p.beta), gamma: 90.0 },
-        _ => Parameters { a, b, c, alpha: round(p.alpha), beta: round(p.beta), gamma: round(p.gamma) },
-    }
-}
-
-fn cell(out: &mut String, lattice: &Lattice, group: &SpaceGroup, orbits: &[OrbitSite]) {
-    let p = constrained(lattice, group.crystal_system);
-    let number = |x: f64, digits: usize| {
-        let text = format!("{x:.digits$}");
-        if text.contains('.') { text.trim_end_matches('0').trim_end_matches('.').to_string() } else { text }
+/// The block: audit, chemistry, cell, symmetry, atoms, in the order of the standard's own examples.
+fn assemble(
+    group: &SpaceGroup,
+    cell: &WrittenCell,
+    atoms: &AtomList<'_>,
+    description: &Description,
+) -> Result<String, WriteError> {
+    let unit = atoms.formula_unit();
+    let weight = format!("{:.3}", unit.weight());
+    let volume = format!("{:.4}", cell.volume()?);
+    // Density of the digits as written, so that a reader who checks finds the same.
+    let density = match (weight.parse::<f64>(), volume.parse::<f64>()) {
+        (Ok(weight), Ok(volume)) => DENSITY_UNIT * weight * unit.z as f64 / volume,
+        _ => f64::NAN,
     };
-    for (name, value) in [("a", p.a), ("b", p.b), ("c", p.c)] {
-        item(out, &format!("_cell_length_{name}"), &number(value, 6));
-    }
-    for (name, value) in [("alpha", p.alpha), ("beta", p.beta), ("gamma", p.gamma)] {
-        item(out, &format!("_cell_angle_{name}"), &number(value, 6));
-    }
-    // From the digits written, so that a reader finds the same.
-    let volume = Lattice::from_parameters(&p).map_or_else(|_| lattice.volume(), |l| l.volume());
-    item(out, "_cell_volume", &format!("{volume:.4}"));
-    let (_, elements) = contents(orbits);
-    item(out, "_cell_formula_units_Z", &formula_units(&elements, orbits).to_string());
-    item(out, "_exptl_crystal_density_diffrn", &format!("{:.4}", weight(&elements) * DENSITY / volume));
-}
 
-fn space_group(out: &mut String, group: &SpaceGroup) {
-    item(out, "_space_group_crystal_system", group.crystal_system);
-    item(out, "_space_group_IT_number", &group.number.to_string());
-    item(out, "_space_group_name_H-M_alt", &format!("'{}'", group.hermann_mauguin));
-    // Some Hall symbols hold a double quote: single ones are always right.
-    item(out, "_space_group_name_Hall", &format!("'{}'", group.hall));
+    let mut out = format!("#\\#CIF_1.1\ndata_{}\n", block_code(&description.block_code));
+    let mut item = |name: &str, value: &str| push_item(&mut out, name, value);
+    item("_audit_creation_method", &description.method);
+    if let Some(seconds) = &description.source_date {
+        item("_audit_creation_date", &date(seconds)?);
+    }
+    item("_audit_conform_dict_name", "CIF_CORE");
+    item("_audit_conform_dict_version", "3.4.0");
+    if let Some(name) = &description.name {
+        item("_chemical_name_common", name);
+    }
+    item("_chemical_formula_sum", &unit.sum());
+    if let Some(moiety) = unit.moiety() {
+        item("_chemical_formula_moiety", &moiety);
+    }
+    item("_chemical_formula_weight", &weight);
+    for (name, value) in cell.items() {
+        item(name, &value);
+    }
+    item("_cell_volume", &volume);
+    item("_cell_formula_units_Z", &unit.z.to_string());
+    item("_exptl_crystal_density_diffrn", &format!("{density:.4}"));
+    item("_space_group_crystal_system", group.crystal_system);
+    item("_space_group_IT_number", &group.number.to_string());
+    item("_space_group_name_H-M_alt", &group.hermann_mauguin);
+    // The double prime of a Hall symbol is `"` (International Tables B, 2010, table A1.4.2.5).
+    item("_space_group_name_Hall", &group.hall);
+
+    let mut notes = vec![CAUTION.to_owned()];
+    notes.extend(atoms.notes());
+    notes.extend(description.notes.iter().cloned());
+    out.push_str("_atom_sites_special_details\n");
+    out.push_str(&text_field(&notes));
+    super::citation::push(&mut out, &description.citations);
+
     out.push_str("loop_\n_space_group_symop_id\n_space_group_symop_operation_xyz\n");
-    for (number, operation) in group.operations.iter().enumerate() {
-        let _ = writeln!(out, "{} {operation}", number + 1);
+    for (idx, operation) in group.operations.iter().enumerate() {
+        out.push_str(&format!("{} {operation}\n", idx + 1));
     }
+    let mut bytes = out.into_bytes();
+    atoms.push_types(&mut bytes);
+    atoms.push_sites(&mut bytes);
+    // Everything pushed is ASCII: the lossy path never copies.
+    Ok(String::from_utf8(bytes).unwrap_or_else(|e| String::from_utf8_lossy(e.as_bytes()).into_owned()))
 }
 
-/// Type symbol with the charge, digits before the sign; an unknown charge is left out.
-fn type_symbol(species: &Species) -> String {
-    match species.charge {
-        Some(q) if q != 0 => format!("{}{}{}", species.element, q.abs(), if q < 0 { '-' } else { '+' }),
-        _ => species.element.symbol().to_string(),
-    }
-}
-
-fn atom_types(out: &mut String, orbits: &[OrbitSite]) {
-    let mut types: BTreeMap<String, Option<i8>> = BTreeMap::new();
-    for occupant in orbits.iter().flat_map(|o| &o.site.occupants) {
-        types.insert(type_symbol(&occupant.species), occupant.species.charge);
-    }
-    let charged = types.values().any(Option::is_some);
-    out.push_str("loop_\n_atom_type_symbol\n");
-    if charged {
-        out.push_str("_atom_type_oxidation_number\n");
-    }
-    for (symbol, charge) in types {
-        let _ = match charge {
-            Some(q) if charged => writeln!(out, "{symbol} {q}"),
-            None if charged => writeln!(out, "{symbol} ?"),
-            _ => writeln!(out, "{symbol}"),
-        };
-    }
-}
-
-fn atom_sites(out: &mut String, orbits: &[OrbitSite]) {
-    let shared = |site: &Site| site.occupants.len() > 1;
-    let any_shared = orbits.iter().any(|o| shared(&o.site));
-    out.push_str(
-        "loop_\n_atom_site_label\n_atom_site_type_symbol\n_atom_site_fract_x\n_atom_site_fract_y\n_atom_site_fract_z\n\
-         _atom_site_occupancy\n_atom_site_site_symmetry_multiplicity\n_atom_site_Wyckoff_symbol\n_atom_site_calc_flag\n",
-    );
-    if any_shared {
-        out.push_str("_atom_site_disorder_assembly\n_atom_site_disorder_group\n");
-    }
-    let mut order: Vec<&OrbitSite> = orbits.iter().collect();
-    let key = |o: &OrbitSite| {
-        let first = o.site.occupants.first().map(|x| x.species);
-        (first.is_some_and(|s| s.charge < Some(0)), first.map(|s| (s.element.symbol(), s.charge)))
-    };
-    order.sort_by(|a, b| key(a).cmp(&key(b)));
-    let mut numbers: BTreeMap<Element, usize> = BTreeMap::new();
-    let mut assembly = 0;
-    for orbit in order {
-        assembly += usize::from(shared(&orbit.site));
-        for (group, occupant) in orbit.site.occupants.iter().enumerate() {
-            let number = numbers.entry(occupant.species.element).or_insert(0);
-            *number += 1;
-            let _ = write!(out, "{}{number} {}", occupant.species.element, type_symbol(&occupant.species));
-            for x in orbit.site.position.0.iter() {
-                let _ = write!(out, " {}", coordinate(*x));
-            }
-            // The 27th letter is \a in CIF 1.1.
-            let letter = if orbit.wyckoff.is_ascii_lowercase() { orbit.wyckoff.to_string() } else { "\\a".into() };
-            let _ = write!(out, " {} {} {letter} calc", decimal(&occupant.occupancy), orbit.multiplicity);
-            if any_shared {
-                let _ = match shared(&orbit.site) {
-                    true => write!(out, " S{assembly} {}", group + 1),
-                    false => write!(out, " . ."),
-                };
-            }
-            out.push('\n');
+/// A single item; the value begins in column [`VALUE_COLUMN`] where it fits into the line.
+fn push_item(out: &mut String, name: &str, value: &str) {
+    match quoted(&ascii(value)) {
+        Some(quoted) if VALUE_COLUMN + quoted.len() <= MAX_LINE => {
+            out.push_str(&format!("{name:<VALUE_COLUMN$}{quoted}\n"));
+        }
+        _ => {
+            out.push_str(&format!("{name}\n"));
+            push_value(out, Some(value));
         }
     }
 }
 
-/// Eight decimals in [0, 1): neither -0 nor 1.00000000.
-fn coordinate(x: f64) -> String {
-    let text = format!("{:.8}", x.rem_euclid(1.0));
-    if text.starts_with('1') { "0.00000000".into() } else { text }
+/// A value on a line of its own, or as a text field; `.` for one that does not apply.
+pub(super) fn push_value(out: &mut String, value: Option<&str>) {
+    match value.map(|value| quoted(&ascii(value))) {
+        None => out.push_str(".\n"),
+        Some(Some(quoted)) if quoted.len() <= MAX_LINE => out.push_str(&format!("{quoted}\n")),
+        Some(_) => out.push_str(&text_field(&[value.unwrap_or_default().to_owned()])),
+    }
 }
 
-#[cfg(test)]
-mod tests {
-    use super::*;
+/// A block code of at most [`MAX_BLOCK_CODE`] printable characters without blanks.
+fn block_code(wanted: &str) -> String {
+    let keep = |c: char| if c.is_ascii_graphic() { c } else { '_' };
+    let code: String = wanted.chars().map(keep).take(MAX_BLOCK_CODE).collect();
+    if code.is_empty() { "structure".into() } else { code }
+}
 
-    #[test]
-    fn values_are_quoted_as_the_grammar_needs() {
-        for (text, want) in [
-            ("cubic", "cubic"),
-            ("F d -3 m", "'F d -3 m'"),
-            ("?", "'?'"),
-            ("", "''"),
-            ("data_x", "'data_x'"),
-            ("_x", "'_x'"),
-            ("it's", "it's"),
-            ("it's so", "\"it's so\""),
-        ] {
-            assert_eq!(quoted(text), want);
+/// `YYYY-MM-DD` (UTC) of a number of seconds since 1970-01-01.
+fn date(seconds: &str) -> Result<String, WriteError> {
+    let bad = || WriteError::Date { text: seconds.to_owned() };
+    let seconds: u64 = seconds.trim().parse().map_err(|_| bad())?;
+    let mut days = seconds / 86_400;
+    let mut year = 1970;
+    let leap = |year: u64| year.is_multiple_of(4) && (!year.is_multiple_of(100) || year.is_multiple_of(400));
+    loop {
+        let length = if leap(year) { 366 } else { 365 };
+        if days < length {
+            break;
         }
-        assert_eq!(coordinate(-1e-17), "0.00000000");
-        assert_eq!(coordinate(0.999_999_999), "0.00000000");
-        assert_eq!(decimal(&Amount::new(19, 20)), "0.95");
-        assert_eq!(ascii("3 Å □"), "3 \\%A []");
+        (days, year) = (days - length, year + 1);
+        if year > 9999 {
+            return Err(bad());
+        }
     }
+    let february = if leap(year) { 29 } else { 28 };
+    let mut month = 1;
+    for length in [31, february, 31, 30, 31, 30, 31, 31, 30, 31, 30, 31] {
+        if days < length {
+            break;
+        }
+        (days, month) = (days - length, month + 1);
+    }
+    Ok(format!("{year:04}-{month:02}-{:02}", days + 1))
 }
