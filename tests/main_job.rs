@@ -201,6 +201,40 @@ fn doped_ceria_is_neutral_and_holds_its_vacancies() {
     check(&average);
 }
 
+/// A cell of eight fluorite units cannot hold a tenth of Gd; the nearest neutral amounts are taken and said.
+#[test]
+fn nearest_amounts_are_neutral_and_said() {
+    let built = run(&Recipe {
+        order: Order::Random,
+        cell: CellChoice::Transformation("2a,2b,2c".into()),
+        nearest: true,
+        ..recipe("Ce0.9Gd0.1O1.95", "primitive-cubic")
+    });
+    assert_eq!(built.nearest.as_deref(), Some("15 O2-, 6 Ce4+, 2 Gd3+"));
+    check(&built);
+}
+
+/// `--span`: the images of every site are at least so far apart, and a cell of one index less would not do.
+#[test]
+fn a_span_is_kept() {
+    let built = run(&Recipe { cell: CellChoice::Span(9.0), ..recipe("MgO", "ccp") });
+    let lattice = &built.cells[0].structure.lattice;
+    let mut shortest = f64::INFINITY;
+    for i in -3..=3 {
+        for j in -3..=3 {
+            for k in -3..=3 {
+                if (i, j, k) != (0, 0, 0) {
+                    let cell = nalgebra::Vector3::new(f64::from(i), f64::from(j), f64::from(k));
+                    shortest = shortest.min((lattice.basis() * cell).norm());
+                }
+            }
+        }
+    }
+    assert!(shortest >= 9.0 - 1e-6, "{shortest}");
+    // No lattice of volume V has all its vectors longer than (√2 V)^(1/3): the densest lattice packing of spheres (Gauss).
+    assert!(shortest <= (2.0_f64.sqrt() * lattice.volume()).cbrt() + 1e-6);
+}
+
 /// The same recipe gives the same structures at 1 and at 4 threads.
 #[test]
 fn threads_do_not_matter() {
