@@ -1,18 +1,19 @@
 //! Interstices: the holes of a packing, each once, with its spheres, its size and its shape.
 //!
-//! They are the vertices of the Voronoi diagram of the sphere centres. Vertices that coincide within a tolerance are one
-//! interstice; its centre is then solved again over *all* spheres around it by least squares, so that rounding in the
-//! diagram does not show. Centres that are no vertices, such as bcc's octahedral interstice (a saddle between its
-//! tetrahedral ones, 2/√3 − 1), are not found here.
+//! They are the places that spheres enclose, found as vertices of the power diagram (for equal spheres, the Voronoi
+//! diagram) gathered to holes. Centres that are no vertices, such as bcc's octahedral interstice (a saddle between its
+//! tetrahedral ones, 2/√3 − 1), are no interstices of this list; `saddle` finds them.
 
+use super::basin::{self, Basins, Hole};
+use super::cell::Spheres;
+use super::diagram::Diagram;
 use super::host::Host;
 use super::polyhedron::Kind;
-use super::voronoi::cell_vertices;
-use crate::crystal::neighbours::NeighbourList;
-use crate::crystal::symmetry::{self, SymmetryError};
-use crate::crystal::{Cartesian, Fractional, Lattice};
-use itertools::Itertools;
-use nalgebra::{Matrix3, Vector3};
+use super::site_symmetry::{self, Orbit};
+use crate::crystal::Fractional;
+use crate::crystal::neighbours::Neighbour;
+use crate::crystal::symmetry::{Operation, SymmetryError};
+use rayon::prelude::*;
 
 /// A sphere that touches an interstice.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -25,19 +26,63 @@ pub struct Contact {
     pub distance: f64,
 }
 
-/// A hole of the packing.
+impl From<&Neighbour> for Contact {
+    fn from(n: &Neighbour) -> Self {
+        Self { sphere: n.index, image: n.image, distance: n.distance }
+    }
+}
+
+/// What kind of place an interstice is.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord)]
+pub enum Class {
+    /// Enclosed on all sides: the clearance is greatest there. A vertex of the diagram.
+    Vertex,
+    /// Greatest in the plane of its spheres, least across it: the middle of a window.
+    Face,
+    /// Greatest along the line of two spheres, least across it.
+    Edge,
+}
+
+/// A hole of the packing, or a saddle between holes.
 #[derive(Clone, Debug, PartialEq)]
 pub struct Interstice {
     /// Centre, each coordinate in [0, 1).
     pub position: Fractional,
-    /// Radius of the sphere that just fits, as a ratio to the packing sphere's.
+    /// Radius of the largest sphere about the centre that meets no packing sphere, as a ratio to the packing sphere's:
+    /// the critical radius ratio.
     pub ratio: f64,
     /// The spheres around it; their number is the coordination number.
     pub shell: Vec<Contact>,
     /// Shape of the shell.
     pub kind: Kind,
+    /// Continuous shape measure from the ideal shape of the kind (0: ideal), where one of so many vertices is known.
+    pub shape: Option<f64>,
+    /// Vertex of the diagram or saddle.
+    pub class: Class,
     /// Number of its orbit under the host's symmetry, from 0, in order of ratio.
     pub orbit: usize,
+    /// Interstices of the orbit in the cell.
+    pub multiplicity: usize,
+    /// Point group of the site, not oriented: `-43m`.
+    pub site_symmetry: &'static str,
+}
+
+impl Interstice {
+    /// The shell as a formula, `X4A2`.
+    pub fn formula(&self, host: &Host) -> String {
+        formula(host, &self.shell)
+    }
+}
+
+/// Number of spheres of each role, as a formula.
+pub(super) fn formula(host: &Host, contacts: &[Contact]) -> String {
+    let of_role = |r: usize| contacts.iter().filter(|c| host.role[c.sphere] == r).count();
+    let part = |(r, role): (usize, &super::host::Role)| match of_role(r) {
+        0 => String::new(),
+        1 => role.name.clone(),
+        n => format!("{}{n}", role.name),
+    };
+    host.roles.iter().enumerate().map(part).collect()
 }
 
 /// Why interstices cannot be found.
@@ -52,9 +97,9 @@ pub enum PackingError {
         /// Why.
         source: SymmetryError,
     },
-    /// More spheres than are taken.
-    #[error("host `{host}` has {spheres} spheres; at most {MAX_SPHERES} are taken")]
-    TooLarge {
+    /// More spheres than are taken, or none.
+    #[error("host `{host}` has {spheres} spheres; 1 to {MAX_SPHERES} are taken")]
+    Spheres {
         /// Name of the host.
         host: String,
         /// How many.
@@ -65,154 +110,99 @@ pub enum PackingError {
 /// Most spheres in a host.
 pub const MAX_SPHERES: usize = 100_000;
 
-/// Vertices nearer than this, in sphere radii, are one interstice; spheres whose distance from a centre differs by less
-/// belong to one shell.
-const MERGE: f64 = 2e-3;
+/// Ratios that differ by less than this are one in the order of interstices.
+const RATIO_GRID: f64 = 1e-6;
 
-/// Distance, in sphere radii, within which symmetry maps an interstice onto another.
-const SAME_PLACE: f64 = 1e-2;
+/// The diagram of a host's spheres and its holes.
+pub(super) struct Geometry {
+    pub diagram: Diagram,
+    pub basins: Basins,
+}
 
-/// The interstices of a host, in order of ratio, orbit and position.
+/// Refuses hosts that are empty or too large.
+pub(super) fn check(host: &Host) -> Result<(), PackingError> {
+    match host.spheres.len() {
+        1..=MAX_SPHERES => Ok(()),
+        spheres => Err(PackingError::Spheres { host: host.name.clone(), spheres }),
+    }
+}
+
+/// Radii of a host's spheres.
+pub(super) fn radii(host: &Host) -> Vec<f64> {
+    (0..host.spheres.len()).map(|i| host.radius(i)).collect()
+}
+
+/// The geometry of a host's spheres.
+pub(super) fn geometry(spheres: &Spheres<'_>) -> Geometry {
+    let diagram = Diagram::new(spheres);
+    let basins = basin::basins(spheres, &diagram);
+    Geometry { diagram, basins }
+}
+
+/// The holes of a host alone, without shapes and symmetry: linear in the number of spheres.
 ///
 /// # Errors
-/// [`PackingError`] when the host is too large or its symmetry cannot be found.
-pub fn interstices(host: &Host) -> Result<Vec<Interstice>, PackingError> {
-    if host.spheres.len() > MAX_SPHERES {
-        return Err(PackingError::TooLarge { host: host.name.clone(), spheres: host.spheres.len() });
-    }
-    let list = NeighbourList::new(&host.lattice, &host.spheres, 2.0);
-    let mut centres: Vec<Fractional> = Vec::new();
-    for sphere in 0..host.spheres.len() {
-        let origin = host.lattice.cartesian(&host.spheres[sphere]).0;
-        for vertex in cell_vertices(&host.lattice, &list, &host.spheres, sphere) {
-            let rough = host.lattice.fractional(&Cartesian(origin + vertex));
-            centres.push(settled(&host.lattice, &list, rough));
-        }
-    }
-    let mut found: Vec<Interstice> =
-        distinct(&host.lattice, &centres).into_iter().map(|c| measured(&host.lattice, &list, c)).collect();
-    found.sort_by(|a, b| a.ratio.total_cmp(&b.ratio));
-    number_orbits(host, &mut found)?;
-    Ok(found)
+/// [`PackingError::Spheres`] when the host is empty or too large.
+pub fn holes(host: &Host) -> Result<Vec<Hole>, PackingError> {
+    check(host)?;
+    let radii = radii(host);
+    Ok(geometry(&Spheres::new(&host.lattice, &host.spheres, &radii)).basins.holes)
 }
 
-/// The spheres around a point: all whose distance exceeds the nearest's by less than [`MERGE`].
-fn shell(
-    lattice: &Lattice,
-    list: &NeighbourList<'_>,
-    centre: &Fractional,
-) -> Vec<crate::crystal::neighbours::Neighbour> {
-    let mut radius = 1.0;
-    let nearest = loop {
-        let near = list.around(centre, radius);
-        if let Some(d) = near.iter().map(|n| n.distance).min_by(f64::total_cmp) {
-            break d;
-        }
-        radius *= 1.5;
-        if radius > lattice.basis().column_iter().map(|c| c.norm()).sum::<f64>() {
-            break radius;
-        }
-    };
-    let mut near = list.around(centre, nearest + MERGE);
-    near.sort_by(|a, b| a.index.cmp(&b.index).then(a.image.cmp(&b.image)));
-    near
-}
-
-/// Moves a rough centre to the point equidistant, in the least squares sense, from the spheres around it.
+/// The interstices of a host that its spheres enclose, in order of ratio, orbit and position.
 ///
-/// |c|² − 2 c·p_i + |p_i|² = r² for all i; subtracting the mean leaves linear equations in c.
-fn settled(lattice: &Lattice, list: &NeighbourList<'_>, rough: Fractional) -> Fractional {
-    let points: Vec<Vector3<f64>> = shell(lattice, list, &rough).iter().map(|n| n.vector).collect();
-    let n = points.len() as f64;
-    let mean: Vector3<f64> = points.iter().sum::<Vector3<f64>>() / n;
-    let mean_square: f64 = points.iter().map(|p| p.norm_squared()).sum::<f64>() / n;
-    let (mut normal, mut right) = (Matrix3::zeros(), Vector3::zeros());
-    for p in &points {
-        let d = p - mean;
-        normal += d * d.transpose();
-        right += d * ((p.norm_squared() - mean_square) / 2.0);
-    }
-    match normal.try_inverse() {
-        Some(inverse) => {
-            let shift = inverse * right;
-            Fractional(rough.0 + lattice.fractional(&Cartesian(shift)).0)
-        }
-        None => rough,
-    }
+/// # Errors
+/// [`PackingError`] when the host is empty, too large, or its symmetry cannot be found.
+pub fn interstices(host: &Host) -> Result<Vec<Interstice>, PackingError> {
+    let operations = site_symmetry::operations(host)?;
+    Ok(classified(host, &operations, Class::Vertex, holes(host)?).0)
 }
 
-/// One of each group of centres nearer to each other than [`MERGE`], reduced to the cell.
-fn distinct(lattice: &Lattice, centres: &[Fractional]) -> Vec<Fractional> {
-    let list = NeighbourList::new(lattice, centres, MERGE);
-    let mut taken = vec![false; centres.len()];
-    let mut kept = Vec::new();
-    for i in 0..centres.len() {
-        if taken[i] {
-            continue;
-        }
-        for n in list.around(&centres[i], MERGE) {
-            taken[n.index] = true;
-        }
-        kept.push(tidy(&centres[i]));
-    }
-    kept
-}
-
-/// Reduced to [0, 1), with coordinates a rounding error from 0 or a simple fraction set on it.
-fn tidy(position: &Fractional) -> Fractional {
-    const GRID: f64 = 48.0;
-    const ROUNDING: f64 = 1e-9;
-    let on_grid = |x: f64| {
-        let nearest = (x * GRID).round() / GRID;
-        if (nearest - x).abs() < ROUNDING { nearest + 0.0 } else { x }
-    };
-    Fractional(position.0.map(on_grid)).reduced()
-}
-
-fn measured(lattice: &Lattice, list: &NeighbourList<'_>, position: Fractional) -> Interstice {
-    let near = shell(lattice, list, &position);
-    let distance = near.iter().map(|n| n.distance).sum::<f64>() / near.len() as f64;
-    let vectors: Vec<_> = near.iter().map(|n| n.vector).collect();
-    let shell = near.iter().map(|n| Contact { sphere: n.index, image: n.image, distance: n.distance }).collect();
-    Interstice { position, ratio: distance - 1.0, shell, kind: Kind::of(&vectors), orbit: 0 }
-}
-
-/// Numbers the orbits under the symmetry of the spheres and sorts by orbit, then position.
-fn number_orbits(host: &Host, found: &mut [Interstice]) -> Result<(), PackingError> {
-    let (operations, _) = symmetry::operations(&host.lattice, &host.spheres, &vec![0; host.spheres.len()], 1e-4)
-        .map_err(|source| PackingError::Symmetry { host: host.name.clone(), source })?;
-    let positions: Vec<Fractional> = found.iter().map(|hole| hole.position).collect();
-    let list = NeighbourList::new(&host.lattice, &positions, SAME_PLACE);
-    let mut orbit = vec![usize::MAX; positions.len()];
-    let mut next = 0;
-    for i in 0..positions.len() {
-        if orbit[i] != usize::MAX {
-            continue;
-        }
-        for operation in &operations {
-            for n in list.around(&operation.apply(&positions[i]), SAME_PLACE) {
-                orbit[n.index] = next;
+/// Adds shape and symmetry to holes or saddles and sorts them; and for each of the given ones its place in the list.
+pub(super) fn classified(
+    host: &Host,
+    operations: &[Operation],
+    class: Class,
+    holes: Vec<Hole>,
+) -> (Vec<Interstice>, Vec<usize>) {
+    let grid = |x: f64| (x / RATIO_GRID).round() as i64;
+    let place = |h: &Hole| -> [i64; 3] { h.position.0.map(grid).into() };
+    let mut order: Vec<usize> = (0..holes.len()).collect();
+    order.sort_by_key(|i| (grid(holes[*i].ratio), place(&holes[*i])));
+    let positions: Vec<Fractional> = order.iter().map(|i| holes[*i].position).collect();
+    let orbits = site_symmetry::orbits(host, operations, &positions);
+    // Orbits are numbered as they come; within one, by position.
+    let mut order: Vec<(Orbit, usize)> = orbits.into_iter().zip(order).collect();
+    order.sort_by_key(|(orbit, i)| (orbit.number, place(&holes[*i])));
+    let mut went = vec![0; holes.len()];
+    order.iter().enumerate().for_each(|(to, (_, from))| went[*from] = to);
+    let found = order
+        .into_par_iter()
+        .map(|(orbit, i)| {
+            let hole = &holes[i];
+            let vectors: Vec<_> = hole.shell.iter().map(|n| n.vector).collect();
+            let (kind, shape) = Kind::of(&vectors);
+            Interstice {
+                position: hole.position,
+                ratio: hole.ratio,
+                shell: hole.shell.iter().map(Contact::from).collect(),
+                kind,
+                shape,
+                class,
+                orbit: orbit.number,
+                multiplicity: orbit.multiplicity,
+                site_symmetry: orbit.site_symmetry,
             }
-        }
-        orbit[i] = next;
-        next += 1;
-    }
-    for (hole, orbit) in found.iter_mut().zip(orbit) {
-        hole.orbit = orbit;
-    }
-    let key = |h: &Interstice| h.position.0.map(|x| (x * 1e6).round() as i64);
-    let order: Vec<Interstice> = found
-        .iter()
-        .cloned()
-        .sorted_by(|a, b| a.orbit.cmp(&b.orbit).then_with(|| key(a).as_slice().cmp(key(b).as_slice())))
+        })
         .collect();
-    found.clone_from_slice(&order);
-    Ok(())
+    (found, went)
 }
 
 #[cfg(test)]
 mod tests {
     use super::*;
+    use crate::crystal::{Cartesian, Lattice};
+    use nalgebra::Vector3;
 
     fn counts(name: &str) -> Vec<(Kind, usize, usize, f64)> {
         let host = Host::parse(name).unwrap();
@@ -255,6 +245,17 @@ mod tests {
         assert!((cubic[0].3 - (3.0_f64.sqrt() - 1.0)).abs() < 1e-12);
     }
 
+    /// AABB per cell: 4 prisms at √(7/3) − 1 (Pauling: 0.528), 2 octahedra, 4 tetrahedra.
+    #[test]
+    fn layers_straight_above_each_other_leave_prisms() {
+        let rows = counts("layers:AABB");
+        let of = |kind: Kind| rows.iter().find(|r| r.0 == kind).map(|r| (r.1, r.2, r.3)).unwrap();
+        let (n, number, ratio) = of(Kind::TrigonalPrismatic);
+        assert_eq!((n, number), (6, 4));
+        assert!((ratio - ((7.0_f64 / 3.0).sqrt() - 1.0)).abs() < 1e-12);
+        assert_eq!((of(Kind::Octahedral).1, of(Kind::Tetrahedral).1, rows.len()), (2, 4, 3));
+    }
+
     /// The same holes whether the host is given in its primitive cell, a skewed one or a supercell, and when every
     /// sphere is displaced by up to 1e-6 of the sphere distance.
     #[test]
@@ -271,7 +272,8 @@ mod tests {
                 spheres.push(Fractional(p.0 + Vector3::new(1.0, -0.7, 0.4) * 2e-7 * jitter).reduced());
             }
         }
-        let found = interstices(&Host { lattice, spheres, ..host }).unwrap();
+        let role = vec![0; spheres.len()];
+        let found = interstices(&Host { lattice, spheres, role, ..host }).unwrap();
         let number = |kind| found.iter().filter(|h| h.kind == kind).count();
         assert_eq!((number(Kind::Octahedral), number(Kind::Tetrahedral), found.len()), (6, 12, 18));
     }
