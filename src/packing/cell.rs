@@ -2,7 +2,7 @@
 //!
 //! A cell starts as a cube and is cut by the radical planes between its sphere and the others, nearest first, until no
 //! plane still to come can reach its farthest vertex; for equal spheres that is the Voronoi cell. Vertices within
-//! [`ON_PLANE`] of a plane are kept and count as on it, so cospherical points, the rule in packings, need no special
+//! a rounding error of a plane are kept and count as on it, so cospherical points, the rule in packings, need no special
 //! case: the faces are polygons that may share a vertex in any number.
 //!
 //! Radical plane of spheres at 0 and d with radii r, s: x·d/|d| = (d² + r² − s²)/(2|d|).

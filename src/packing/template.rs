@@ -350,3 +350,75 @@ impl Template {
         if kept { Ok((cell, lattice)) } else { Err(self.fail("cell", reason())) }
     }
 }
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn embedded_templates_are_sound() {
+        for (name, text) in EMBEDDED {
+            let mut templates = Templates::default();
+            templates.add(name, text).unwrap();
+            let template = templates.get(name).expect("named as its file");
+            assert!(!template.title.is_empty() && !template.source.is_empty(), "{name}");
+            for (parameter, p) in template.parameters() {
+                for value in [p.minimum, p.maximum] {
+                    let given = BTreeMap::from([(parameter.clone(), value)]);
+                    assert!(template.host(name, &given).is_ok(), "{name}: {parameter} = {value}");
+                }
+            }
+        }
+    }
+
+    /// Each fault is told with its place in the document.
+    #[test]
+    fn faults_are_told_with_their_place() {
+        let good = EMBEDDED.iter().find(|(name, _)| *name == "pyrochlore").map(|(_, text)| *text).unwrap();
+        let message = |from: &str, to: &str| {
+            assert!(good.contains(from), "{from}");
+            Templates::default().add("mine.json", &good.replacen(from, to, 1)).unwrap_err().to_string()
+        };
+        for (from, to, path, reason) in [
+            ("\"hall_symbol\"", "\"hall\"", "hall", "unknown field `hall`"),
+            ("-F 4vw 2vw 3", "F d -3 m", "hall_symbol", "is no Hall symbol of a tabulated setting"),
+            ("\"pyrochlore\"", "\"ccp\"", "name", "`ccp` cannot be the name"),
+            ("\"pyrochlore\"", "\"a b\"", "name", "letters, digits and hyphens"),
+            ("\"a\": 8", "\"a\": -8", "cell.a", "-8 radii of the packing sphere; it must be above 0"),
+            ("\"a\": 8", "\"a\": 9", "cell", "lacks the symmetry of space group 227"),
+            ("\"a\": 8", "\"a\": \"8*w\"", "cell.a", "character 3: expected a number, a parameter (x)"),
+            ("\"alpha\": 90", "\"alpha\": 0", "cell", "above 0 and below 180"),
+            ("\"radius\": 1", "\"radius\": 0", "roles[0].radius", "a radius of 0"),
+            ("\"anion\"", "\"Anion\"", "roles[0].ion", "expected `anion` or `cation`"),
+            ("\"role\": \"X\", \"at\": [\"x\"", "\"role\": \"Y\", \"at\": [\"x\"", "spheres[0].role", "roles are X"),
+            ("[\"3/8\", \"3/8\", \"3/8\"]", "[\"3/8\", \"3/8\", \"3/8\", 0]", "spheres[1].at", "trailing"),
+            (
+                "[\"3/8\", \"3/8\", \"3/8\"]",
+                "[\"3/8\", true, \"3/8\"]",
+                "spheres[1].at[1]",
+                "a number or arithmetic in quotes",
+            ),
+            ("[\"3/8\", \"3/8\", \"3/8\"]", "[\"3/8\", \"1/8\", \"1/8\"]", "spheres[1].at", "0.5 is the least"),
+            ("\"ideal\": \"3/8\"", "\"ideal\": \"1/2\"", "parameters.x", "0.5 lies outside 0.3125 to 0.375"),
+        ] {
+            let found = message(from, to);
+            let start = format!("template `mine.json`, {path}: ");
+            assert!(found.starts_with(&start) && found.contains(reason), "{to}: {found}");
+        }
+        assert!(Templates::default().add("cut.json", &good[..200]).unwrap_err().to_string().contains("EOF"));
+        let large = " ".repeat(MAX_FILE + 1);
+        assert!(Templates::default().add("large.json", &large).unwrap_err().to_string().contains("at most 1048576"));
+    }
+
+    #[test]
+    fn parameters_are_checked() {
+        let message = |text: &str| Host::parse(text).unwrap_err().to_string();
+        assert!(message("pyrochlore:x=0.4").contains("`x` (x of the anion in 48f) is 0.4; it must be 0.3125 to 0.375"));
+        assert!(message("pyrochlore:y=0.4").contains("there is no parameter `y`; take `x`"));
+        assert!(message("fluorite-cations:x=1").contains("it has none"));
+        let mut own = Templates::embedded().clone();
+        let text = EMBEDDED[0].1.replace("\"argyrodite\"", "\"mine\"");
+        own.add("mine.json", &text).unwrap();
+        assert_eq!(Host::parse_with("mine", &own).unwrap().spheres.len(), 6);
+    }
+}

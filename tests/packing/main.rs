@@ -1,5 +1,7 @@
 //! Packings and their interstices, against closed forms, published structures and disturbed input.
 
+#![allow(clippy::unwrap_used, reason = "a failed test may panic")]
+
 mod frameworks;
 mod ideal;
 mod made;
