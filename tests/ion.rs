@@ -10,7 +10,7 @@ use num_traits::Zero;
 use proptest::prelude::*;
 
 fn element(symbol: &str) -> Element {
-    Element::from_symbol(symbol).unwrap()
+    Element::from_symbol(symbol).expect("a symbol of the tables")
 }
 
 fn ion(symbol: &str, charge: i8) -> Ion {
@@ -18,7 +18,8 @@ fn ion(symbol: &str, charge: i8) -> Ion {
 }
 
 fn assigned(text: &str) -> String {
-    assign(&formula::parse(text).unwrap()).unwrap_or_else(|e| panic!("{text}: {e}")).best.to_string()
+    let formula = formula::parse(text).unwrap_or_else(|e| panic!("{e}"));
+    assign(&formula).unwrap_or_else(|e| panic!("{text}: {e}")).best.to_string()
 }
 
 /// Oxidation states as any textbook of inorganic chemistry gives them (common practice, no source).
@@ -186,7 +187,9 @@ fn pyrite_is_doubted() {
 /// (quartz) 4 x 1.609 (with the first-choice R0 = 1.624 Å; Brown & Altermatt's 1.640 Å misses by 0.35), NaCl 6 x 2.820, SrTiO3 Ti 6 x 1.9525.
 #[test]
 fn bond_valence_sums_of_published_structures_meet_the_charges() {
-    let shells: [(&str, i8, &str, &[(f64, f64)]); 7] = [
+    // Number and length of the bonds.
+    type Shell = &'static [(f64, f64)];
+    let shells: [(&str, i8, &str, Shell); 7] = [
         ("Mg", 2, "O", &[(6.0, 2.106)]),
         ("Al", 3, "O", &[(3.0, 1.855), (3.0, 1.972)]),
         ("Ca", 2, "F", &[(8.0, 2.365)]),
