@@ -165,6 +165,8 @@ fn normal_spinel_is_the_lowest_order_of_fourteen_atoms() {
         assert!(letters.contains(&(want.0.to_string(), want.1, want.2)), "{letters:?}");
     }
     assert_eq!((coordination(structure, "Mg"), coordination(structure, "Al")), (vec![4], vec![6]));
+    // a = 8.083 Å (handbook value, recalled); the mean over contacts of an ideal packing comes out 1.1 % too small.
+    assert!((found.lattice.parameters().a / 8.083 - 1.0).abs() < 0.015);
     check(&built);
 }
 

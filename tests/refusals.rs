@@ -96,8 +96,8 @@ fn wrong_input_is_told_with_place_and_remedy() {
         vec!["radii", "Fe", "--with", "Mg"],
         vec!["holes", "nothing"],
     ];
-    let transcript: Vec<String> = calls.iter().map(|call| run(call, &folder)).collect();
-    insta::assert_snapshot!(transcript.join("\n"));
+    let shown: Vec<String> = calls.iter().map(|call| run(call, &folder)).collect();
+    insta::assert_snapshot!(shown.join("\n"));
 }
 
 /// An earlier run's folder is kept unless `--replace` is given, and then replaced whole.

@@ -3,6 +3,7 @@
 //! Operations act on fractional coordinates, x′ = W x + w. The standard setting is moyo's: origin choice 2,
 //! hexagonal axes for rhombohedral groups, unique axis b.
 
+use super::transformation::write_terms;
 use super::{Fractional, Lattice, Occupant, Site, Structure, setting};
 use crate::ion::Amount;
 use moyo::MoyoDataset;
@@ -61,30 +62,14 @@ impl fmt::Display for Operation {
             if row > 0 {
                 f.write_str(",")?;
             }
-            let mut empty = true;
-            for (column, name) in ["x", "y", "z"].into_iter().enumerate() {
-                let k = self.rotation[(row, column)];
-                let sign = if k < 0 {
-                    "-"
-                } else if empty {
-                    ""
-                } else {
-                    "+"
-                };
-                match k.abs() {
-                    0 => continue,
-                    1 => write!(f, "{sign}{name}")?,
-                    n => write!(f, "{sign}{n}{name}")?,
-                }
-                empty = false;
-            }
+            let any = write_terms(f, [0, 1, 2].map(|column| self.rotation[(row, column)]), ["x", "y", "z"])?;
             let w = self.translation[row].rem_euclid(1.0);
             let fraction = Amount::new((w * TRANSLATION_GRID as f64).round() as i128, TRANSLATION_GRID.into()).fract();
             if (crate::ion::amount::to_f64(&fraction) - w).abs() > 1e-6 && (w - 1.0).abs() > 1e-6 {
                 write!(f, "+{w:.8}")?;
             } else if *fraction.numer() != 0 {
                 write!(f, "+{fraction}")?;
-            } else if empty {
+            } else if !any {
                 f.write_str("0")?;
             }
         }

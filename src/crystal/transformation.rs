@@ -152,26 +152,33 @@ impl fmt::Display for Transformation {
             if axis > 0 {
                 f.write_str(",")?;
             }
-            let mut first = true;
-            for (row, name) in ["a", "b", "c"].into_iter().enumerate() {
-                let k = self.matrix[(row, axis)];
-                let sign = if k < 0 {
-                    "-"
-                } else if first {
-                    ""
-                } else {
-                    "+"
-                };
-                match k.abs() {
-                    0 => continue,
-                    1 => write!(f, "{sign}{name}")?,
-                    n => write!(f, "{sign}{n}{name}")?,
-                }
-                first = false;
-            }
+            write_terms(f, [0, 1, 2].map(|row| self.matrix[(row, axis)]), ["a", "b", "c"])?;
         }
         Ok(())
     }
+}
+
+/// Writes `2a-b`; whether there was anything to write.
+pub(super) fn write_terms(
+    f: &mut fmt::Formatter<'_>,
+    coefficients: [i32; 3],
+    names: [&str; 3],
+) -> Result<bool, fmt::Error> {
+    let mut any = false;
+    for (k, name) in coefficients.into_iter().zip(names) {
+        let sign = match k {
+            k if k < 0 => "-",
+            _ if any => "+",
+            _ => "",
+        };
+        match k.abs() {
+            0 => continue,
+            1 => write!(f, "{sign}{name}")?,
+            n => write!(f, "{sign}{n}{name}")?,
+        }
+        any = true;
+    }
+    Ok(any)
 }
 
 #[cfg(test)]

@@ -1,6 +1,7 @@
 //! Counting and numbering of arrangements: multisets of kinds on the sites of each class.
 
 use super::Problem;
+use num_integer::Integer;
 
 /// n! / Π k_i! in exact arithmetic; `None` when it exceeds 128 bits.
 pub(super) fn multinomial(counts: &[usize]) -> Option<u128> {
@@ -8,17 +9,12 @@ pub(super) fn multinomial(counts: &[usize]) -> Option<u128> {
     for &count in counts {
         for k in 1..=count as u128 {
             placed += 1;
-            // result · placed / k is whole at every step; dividing first keeps the product small.
-            let common = gcd(result, k);
-            let rest = k / common;
-            result = (result / common).checked_mul(placed / gcd(placed, rest))? / (rest / gcd(placed, rest));
+            // result · placed / k is whole; what k does not share with the result it shares with `placed`.
+            let common = result.gcd(&k);
+            result = (result / common).checked_mul(placed / (k / common))?;
         }
     }
     Some(result)
-}
-
-fn gcd(a: u128, b: u128) -> u128 {
-    if b == 0 { a } else { gcd(b, a % b) }
 }
 
 /// Number of arrangements of a problem, all classes together.
