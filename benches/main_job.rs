@@ -3,7 +3,7 @@
 use criterion::{Criterion, criterion_group, criterion_main};
 use interstice::crystal::{Fractional, Lattice, Parameters, Site, Structure, Transformation};
 use interstice::energy::PairTable;
-use interstice::format::cif::{Description, Document, read_structures, write};
+use interstice::format::cif::{Description, Mode, Source, parse, read_structures, write};
 use interstice::ion::{Element, Ion};
 use interstice::ordering::{Contents, Parent, Problem, Progress, every};
 use interstice::packing::{Host, interstices};
@@ -93,7 +93,8 @@ fn cif(c: &mut Criterion) {
     });
     c.bench_function(&format!("read a CIF of {atoms} atoms"), |b| {
         b.iter(|| {
-            let document = Document::parse(black_box(&text)).expect("a document");
+            let source = Source::decode("bench", black_box(text.as_bytes())).expect("a text");
+            let document = parse(&source, Mode::Lenient).expect("a document");
             read_structures(&document)
         })
     });

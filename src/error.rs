@@ -116,15 +116,15 @@ pub enum Error {
         /// `--replace` where it may be replaced.
         remedy: &'static str,
     },
-    /// A fault in a CIF.
-    #[error("{path}: {fault}")]
+    /// Faults in a CIF.
+    #[error("{report}")]
     Cif {
         /// Path.
         path: String,
-        /// The fault.
-        fault: crate::format::cif::Diagnostic,
-        /// The line at fault.
-        excerpt: String,
+        /// The faults.
+        faults: Vec<crate::format::cif::Diagnostic>,
+        /// Each fault with its place and the line that it stands on.
+        report: String,
     },
     /// No neutral amounts near the composition.
     #[error(

@@ -4,7 +4,7 @@ use super::{Outcome, Radii, print};
 use interstice::crystal::Structure;
 use interstice::crystal::symmetry::{TOLERANCE, symmetrise};
 use interstice::error::Error;
-use interstice::format::cif::{Diagnostic, Document, ReadStructure, document, read_structures};
+use interstice::format::cif::{self, Diagnostic, Mode, ReadStructure, Source, parse, read_structures};
 use interstice::ion::formula::{Formula, Named, Part};
 use interstice::ion::oxidation;
 use interstice::report::vetting::{Vetted, labels, text};
@@ -30,12 +30,19 @@ pub struct Arguments {
     /// Print JSON Lines
     #[arg(long)]
     json: bool,
+    /// Hold the files against the syntax of CIF 1.1 or 2.0 by the letter, and nothing else: a line a fault
+    #[arg(long, conflicts_with = "json")]
+    syntax: bool,
 }
+
+/// Errors of one file that are shown; `--syntax` lists all.
+const MAX_SHOWN: usize = 10;
 
 pub fn run(arguments: &Arguments) -> Result<Outcome, Error> {
     let (mut outcome, mut fault) = (Outcome::Clean, None);
     for path in &arguments.files {
-        match vet(path, arguments) {
+        let vetted = if arguments.syntax { vet_syntax(path) } else { vet(path, arguments) };
+        match vetted {
             Ok(false) => {}
             Ok(true) => outcome = Outcome::Broken,
             // One bad file does not stop the others; all but the last fault are told as they come.
@@ -49,25 +56,43 @@ pub fn run(arguments: &Arguments) -> Result<Outcome, Error> {
     fault.map_or(Ok(outcome), Err)
 }
 
+fn read(path: &str) -> Result<Vec<u8>, Error> {
+    std::fs::read(path).map_err(|source| Error::File { action: "cannot read", path: path.into(), source })
+}
+
+/// Whether the file's syntax is at fault.
+fn vet_syntax(path: &str) -> Result<bool, Error> {
+    let faults = cif::check_syntax(&read(path)?);
+    for fault in &faults {
+        print(&(fault.one_line(path) + "\n"));
+    }
+    Ok(!faults.is_empty())
+}
+
+/// The errors among the faults of a file, each with the line that it stands on.
+fn fail(path: &str, faults: Vec<Diagnostic>, text: &str) -> Error {
+    let errors: Vec<&Diagnostic> = faults.iter().filter(|f| f.severity == cif::Severity::Error).collect();
+    let shown = errors.iter().take(MAX_SHOWN).map(|fault| fault.render(path, text));
+    let mut report = shown.collect::<Vec<_>>().join("\n");
+    if errors.len() > MAX_SHOWN {
+        report += &format!("\nand {} more errors; `--syntax` lists them", errors.len() - MAX_SHOWN);
+    }
+    Error::Cif { path: path.into(), faults, report }
+}
+
 /// Whether a rule is broken in any structure of the file.
 fn vet(path: &str, arguments: &Arguments) -> Result<bool, Error> {
-    let bytes =
-        std::fs::read(path).map_err(|source| Error::File { action: "cannot read", path: path.into(), source })?;
-    let fail = |fault: Diagnostic, source: &str| Error::Cif {
-        path: path.into(),
-        excerpt: source.lines().nth(fault.line - 1).unwrap_or_default().to_string(),
-        fault,
-    };
-    let source = document::decode(&bytes).map_err(|fault| fail(fault, ""))?;
-    let document = Document::parse(&source).map_err(|fault| fail(fault, &source))?;
+    let bytes = read(path)?;
+    let source = Source::decode(path, &bytes).map_err(|fault| fail(path, vec![fault], ""))?;
+    let document = parse(&source, Mode::Lenient).map_err(|faults| fail(path, faults, source.text()))?;
     let structures = read_structures(&document);
     if structures.is_empty() {
         let message = format!("{} data blocks, none of them lists atoms", document.blocks.len());
-        return Err(fail(document.fault(0, message), &source));
+        return Err(fail(path, vec![document.fault(0, message)], source.text()));
     }
     let mut broken = false;
     for read in structures {
-        let mut read = read.map_err(|fault| fail(fault, &source))?;
+        let mut read = read.map_err(|fault| fail(path, vec![fault], source.text()))?;
         let vetted = judged(path, &mut read, arguments);
         broken |= worst(&vetted.findings) == Some(Severity::Broken);
         // One line a structure.

@@ -10,17 +10,17 @@ mod prototypes;
 mod real;
 
 use interstice::crystal::{Fractional, Lattice, Occupant, Parameters, Site, Structure};
-use interstice::format::cif::document::{Document, decode};
 use interstice::format::cif::structure::{ReadStructure, read_structures};
 use interstice::format::cif::write::{Description, write};
+use interstice::format::cif::{Mode, Source, parse};
 use interstice::ion::{Amount, Element, Ion};
 use matcher::assert_alike;
 use prototypes::Prototype;
 
 /// The only structure of a file, or its error as `line:column: text`.
 pub fn read(cif: &str) -> Result<ReadStructure, String> {
-    let source = decode(cif.as_bytes()).map_err(|e| e.to_string())?;
-    let document = Document::parse(&source).map_err(|e| e.to_string())?;
+    let source = Source::decode("test", cif.as_bytes()).map_err(|e| e.to_string())?;
+    let document = parse(&source, Mode::Lenient).map_err(|e| e[0].to_string())?;
     let mut found = read_structures(&document);
     assert_eq!(found.len(), 1, "blocks with sites");
     found.remove(0).map_err(|e| format!("{}:{}: {}", e.line, e.column, e.message))

@@ -17,7 +17,7 @@ mod source;
 mod species;
 
 use super::citation::Citation;
-use super::document::{Block, Diagnostic, Document};
+use super::{Block, Diagnostic, Document};
 use crate::crystal::symmetry::Operation;
 use crate::crystal::{Lattice, Structure};
 use assemble::{Expanded, expanded};
@@ -114,7 +114,7 @@ pub fn read_block(document: &Document<'_>, block: &Block<'_>) -> Result<ReadStru
         z,
         citations: source::read(block),
         skipped: list.skipped,
-        warnings: report.finish(),
+        warnings: document.warnings_of(block).iter().cloned().chain(report.finish()).collect(),
     })
 }
 

@@ -6,7 +6,7 @@ use super::report::Report;
 use super::sites::{Listed, MAX_SUM};
 use crate::crystal::symmetry::Operation;
 use crate::crystal::{Fractional, Lattice, Occupant, Site, Structure};
-use crate::format::cif::document::Diagnostic;
+use crate::format::cif::diagnostic::Diagnostic;
 use crate::ion::Amount;
 use crate::ion::amount::to_f64;
 use num_traits::One;

@@ -3,7 +3,7 @@
 use super::report::Report;
 use super::species::{FormulaElements, Reading, of_label, of_type_symbol};
 use crate::crystal::{Cartesian, Fractional, Lattice};
-use crate::format::cif::document::{Block, Diagnostic, Loop, Value};
+use crate::format::cif::{Block, Diagnostic, Loop, Value};
 use crate::ion::{Amount, Species};
 use nalgebra::{Matrix3, Vector3};
 use num_traits::{One, Zero};
@@ -204,7 +204,7 @@ struct Shares {
 }
 
 impl Shares {
-    fn read(&mut self, value: &Value<'_>, report: &mut Report<'_, '_>) -> Result<Amount, Diagnostic> {
+    fn read(&mut self, value: Value<'_>, report: &mut Report<'_, '_>) -> Result<Amount, Diagnostic> {
         let text = value.text();
         if let Some((seen, share)) = &self.last
             && *seen == text
@@ -257,8 +257,8 @@ impl<'f> Types<'f> {
 
     fn species(
         &mut self,
-        label: Option<&Value<'_>>,
-        type_symbol: Option<&Value<'_>>,
+        label: Option<Value<'_>>,
+        type_symbol: Option<Value<'_>>,
         report: &mut Report<'_, '_>,
     ) -> Result<Species, Diagnostic> {
         let stated = type_symbol.filter(|v| !v.is_unknown() && !v.is_inapplicable());
