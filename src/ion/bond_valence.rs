@@ -59,13 +59,19 @@ static TABLE: LazyLock<Vec<Row>> = LazyLock::new(|| {
     include_str!("data/bond_valence.tsv").lines().filter(|line| !line.starts_with('#')).filter_map(row).collect()
 });
 
-/// All published parameters of a cation with an anion, in the order of the table.
+/// Charge of a row whose paper does not part the oxidation states of the cation.
+const ANY_CHARGE: i8 = 9;
+
+/// All published parameters of a cation with an anion: those for its oxidation state, the first choice first, then
+/// those of sets that have none for it but one for any oxidation state.
 pub fn parameters(cation: &Ion, anion: Element) -> impl Iterator<Item = Parameters> {
     let cation = *cation;
-    TABLE
-        .iter()
-        .filter(move |r| r.cation == cation.element.symbol() && r.charge == cation.charge && r.anion == anion.symbol())
-        .map(|r| r.parameters)
+    let of_charge = move |charge: i8| {
+        let symbols = (cation.element.symbol(), anion.symbol());
+        TABLE.iter().filter(move |r| (r.cation, r.anion) == symbols && r.charge == charge).map(|r| r.parameters)
+    };
+    let general = of_charge(ANY_CHARGE).filter(move |p| of_charge(cation.charge).all(|own| own.set != p.set));
+    of_charge(cation.charge).chain(general)
 }
 
 /// Valence of one bond, s = exp[(R₀ − R)/B], in valence units (v.u.).
@@ -89,7 +95,19 @@ mod tests {
             let found = parameters(&ion, o).find(|p| p.set == ValenceSet::Brown1985).unwrap();
             assert_eq!((found.r0, found.b), (r0, 0.37), "{symbol}");
         }
-        assert_eq!(TABLE.len(), 1122);
+        assert_eq!(TABLE.len(), 1121);
+    }
+
+    /// Brese & O'Keeffe (1991) give one value for silver with bromine, 2.22 Å, but Ce3+ and Ce4+ apart with oxygen.
+    #[test]
+    fn a_value_for_any_state_serves_where_none_is_for_this_one() {
+        let find = |symbol: &str, charge, anion: &str| {
+            let ion = Ion::new(Element::from_symbol(symbol).unwrap(), charge);
+            parameters(&ion, Element::from_symbol(anion).unwrap()).map(|p| p.r0).collect::<Vec<_>>()
+        };
+        assert_eq!(find("Ag", 1, "Br"), [2.22]);
+        assert_ne!(find("Ce", 3, "O"), find("Ce", 4, "O"));
+        assert!(find("Na", 1, "Na").is_empty());
     }
 
     /// Periclase: six bonds of 2.106 Å sum to nearly two (R₀ = 1.693 Å): 6 exp(−0.413/0.37) = 1.965.

@@ -6,13 +6,16 @@
 //! unit      = [amount] group+
 //! group     = (element | vacancy | "(" group+ ")" | "[" group+ "]") [amount] blank*
 //! element   = symbol ["(" numeral ["," ("hs" | "ls")] ")"]
-//! numeral   = ["-"] roman, I to VIII, or "0"            oxidation number in Stock notation
+//! numeral   = ["-"] roman, I to IX, or "0"              oxidation number in Stock notation
 //! vacancy   = "□" | "[]"
 //! amount    = digits ["." digits] | "." digits | digits "/" digits
 //! ```
 //! Right after an element, a parenthesis that holds only a Roman numeral (with an optional spin) is an oxidation number;
 //! `I` inside it is therefore never iodine: write `Na[I]` for a group of iodine alone. Blanks part the terms of a sum as
-//! CIF writes it (`Al2 Mg O4`). A dot is a decimal point, so an adduct needs the raised one or `*`.
+//! CIF writes it (`Al2 Mg O4`). A dot is a decimal point, so an adduct needs the raised one or `*`: `CaSO4.2H2O` has
+//! 5.2 O, and only its lack of neutrality gives it away.
+//!
+//! Whatever is read can be written and read again: [`Formula`]'s text parses to the same formula.
 
 use super::amount::{self, Amount, MAX_DENOMINATOR, MAX_DIGITS};
 use super::{Element, Spin};
@@ -33,6 +36,9 @@ pub const MAX_DEPTH: usize = 16;
 
 /// Largest amount accepted, of one term or of a whole formula.
 pub const MAX_AMOUNT: i128 = 1_000_000_000;
+
+/// Largest common denominator of a formula's amounts accepted, so that sums over them stay exact.
+pub const MAX_COMMON_DENOMINATOR: i128 = 1_000_000_000_000;
 
 /// What a term names.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
@@ -188,9 +194,9 @@ impl<'t> Reader<'t> {
                 let what = self.element()?;
                 let amount = self.amount()?;
                 push(&mut terms, Part { what, amount }).map_err(|m| (start, m))?;
-            } else if let Some((opened, open, _)) = stack.last() {
+            } else if let Some((opened, open, _)) = stack.last().filter(|_| self.rest().is_empty()) {
                 return Err((*opened, format!("`{open}` is not closed")));
-            } else if terms.is_empty() {
+            } else if terms.is_empty() || !stack.is_empty() {
                 return Err((self.at, self.unexpected()));
             } else {
                 return Ok(terms);
@@ -216,10 +222,8 @@ impl<'t> Reader<'t> {
             return Err((start, "an amount cannot be negative".into()));
         }
         let Some(written) = self.take(amount_text) else { return Ok(Amount::one()) };
-        let amount = amount::parse(written).ok_or_else(|| {
-            let limits = format!("at most {MAX_DIGITS} digits on a side, a denominator of 1 to {MAX_DENOMINATOR}");
-            (start, format!("cannot read the amount `{written}`; {limits}"))
-        })?;
+        let amount = amount::parse(written)
+            .ok_or_else(|| (start, format!("cannot read the amount `{written}`; {}", amount_limits())))?;
         if amount.is_zero() {
             return Err((start, format!("an amount of {written} is no part of a formula; leave the term out")));
         }
@@ -233,20 +237,51 @@ impl<'t> Reader<'t> {
         add_terms(&mut self.parts, terms, factor).map_err(|message| (self.at, message))
     }
 
+    /// Amounts as multiplied out: bounded, with a common denominator, and each one that can be written again.
     fn check_total(&self) -> Result<(), Fault> {
         let total = self.parts.iter().try_fold(Amount::zero(), |sum, part| sum.checked_add(&part.amount));
-        match total {
-            Some(total) if total <= Amount::from(MAX_AMOUNT) => Ok(()),
-            _ => Err((0, format!("amounts add up to more than {MAX_AMOUNT} or cannot be added exactly"))),
+        if total.is_none_or(|total| total > Amount::from(MAX_AMOUNT)) {
+            return Err((0, format!("amounts add up to more than {MAX_AMOUNT} or cannot be added exactly")));
+        }
+        let common = self.parts.iter().try_fold(1_i128, |common, part| {
+            common
+                .checked_mul(*Amount::new(common, *part.amount.denom()).denom())
+                .filter(|d| *d <= MAX_COMMON_DENOMINATOR)
+        });
+        if common.is_none() {
+            return Err((0, format!("the amounts have no common denominator of at most {MAX_COMMON_DENOMINATOR}")));
+        }
+        match self.parts.iter().find(|part| !part.amount.is_one() && !writable(&part.amount)) {
+            None => Ok(()),
+            Some(part) => Err((0, format!("an amount comes to {}; {}", part.amount, amount_limits()))),
         }
     }
 
     fn unexpected(&self) -> String {
         match self.rest().chars().next() {
             None => format!("the formula ends here; {EXPECTED_TERM}"),
-            Some(c) => format!("found `{c}`, {EXPECTED_TERM}"),
+            Some(c) => format!("found `{c}`, {EXPECTED_TERM}{}", remedy(c)),
         }
     }
+}
+
+/// What a character out of place was probably meant for.
+fn remedy(c: char) -> &'static str {
+    match c {
+        '.' => "; an adduct needs the raised dot `·` or `*`",
+        '+' | '-' | '−' | '⁺' | '⁻' => "; a charge is written as an oxidation number, `Fe(III)`",
+        '₀'..='₉' => "; write amounts in plain digits",
+        '0'..='9' => "; an amount follows its symbol without a blank, an oxidation number is Roman, `Fe(III)`",
+        _ => "",
+    }
+}
+
+fn amount_limits() -> String {
+    format!("at most {MAX_DIGITS} digits on a side, a denominator of 1 to {MAX_DENOMINATOR}")
+}
+
+fn writable(amount: &Amount) -> bool {
+    amount::parse(&amount_suffix(amount)).as_ref() == Some(amount)
 }
 
 fn adduct(input: &str) -> IResult<&str, ()> {
@@ -258,7 +293,8 @@ fn vacancy(input: &str) -> IResult<&str, ()> {
 }
 
 fn amount_text(input: &str) -> IResult<&str, &str> {
-    let fraction = recognize((digit1, char('/'), digit0));
+    // Not `digit0` last: in nom 8 it leaves the rest of a text that it uses up at the wrong place for `recognize`.
+    let fraction = recognize((digit1, char('/'), opt(digit1)));
     let decimal = recognize((digit0, char('.'), digit1));
     alt((fraction, decimal, digit1)).parse(input)
 }
@@ -278,6 +314,7 @@ fn roman(input: &str) -> IResult<&str, i8> {
         value(7, tag("VII")),
         value(6, tag("VI")),
         value(4, tag("IV")),
+        value(9, tag("IX")),
         value(5, tag("V")),
         value(3, tag("III")),
         value(2, tag("II")),
@@ -327,9 +364,9 @@ fn unknown_element(rest: &str) -> String {
     }
 }
 
-/// Roman numeral of an oxidation state of at most 8 in size, in Stock notation.
+/// Roman numeral of an oxidation state of at most 9 in size, in Stock notation.
 pub(crate) fn numeral(charge: i8) -> String {
-    const ROMAN: [&str; 9] = ["0", "I", "II", "III", "IV", "V", "VI", "VII", "VIII"];
+    const ROMAN: [&str; 10] = ["0", "I", "II", "III", "IV", "V", "VI", "VII", "VIII", "IX"];
     let sign = if charge < 0 { "-" } else { "" };
     match ROMAN.get(usize::from(charge.unsigned_abs())) {
         Some(roman) => format!("{sign}{roman}"),
@@ -403,6 +440,8 @@ mod tests {
             ("CaSO4·2H2O", "CaSO6H4"),
             ("Ce0.9Gd0.1O1.95", "Ce0.9Gd0.1O1.95"),
             ("Fe1/3O", "Fe1/3O"),
+            ("OFe1/3", "OFe1/3"),
+            ("OFe12/35", "OFe12/35"),
             ("Fe(II)Fe(III)2O4", "Fe(II)Fe(III)2O4"),
             ("LiCo(III,ls)O2", "LiCo(III,ls)O2"),
             ("Na(I)2O(-II)", "Na(I)2O(-II)"),
@@ -411,6 +450,7 @@ mod tests {
             ("ZrO1.9□0.1", "ZrO1.9□0.1"),
             ("ZrO1.9[]0.1", "ZrO1.9□0.1"),
             ("Na[I]", "NaI"),
+            ("Ir(IX)O4.5", "Ir(IX)O4.5"),
             ("((Fe)2)3O", "Fe6O"),
             (" .5Ca O ", "Ca0.5O0.5"),
         ] {
@@ -437,6 +477,14 @@ mod tests {
             ("MgO*", 5, "ends here"),
             ("2", 2, "ends here"),
             ("□é", 2, "found `é`"),
+            ("MgO.Al2O3", 4, "raised dot"),
+            ("MgAl₂O4", 5, "plain digits"),
+            ("Fe3+", 4, "oxidation number, `Fe(III)`"),
+            ("Fe(3)O", 4, "Roman"),
+            ("(Fe500000000)2O", 1, "add up to more than"),
+            ("(Fe1/999983)1/999979O", 1, "denominator"),
+            ("(Fe0.000000001)0.1O", 1, "denominator"),
+            ("Fe1/999983O1/999979Mg1/999961", 1, "common denominator"),
         ] {
             let error = parse(text).unwrap_err();
             assert_eq!(error.column, column, "{error}");
@@ -446,10 +494,38 @@ mod tests {
         assert!(parse("(((O999999999)999999999)999999999)999999999").is_err());
     }
 
+    fn built_amount() -> impl Strategy<Value = String> {
+        prop_oneof![
+            Just(String::new()),
+            (1_u32..20).prop_map(|n| n.to_string()),
+            "0\\.[0-9]{1,9}",
+            "[1-9][0-9]{0,8}/[1-9][0-9]{0,5}",
+        ]
+    }
+
     proptest! {
         #[test]
         fn never_panics(text in "\\PC{0,40}") {
             let _ = parse(&text);
+        }
+
+        #[test]
+        fn built_formulas_read_back(terms in proptest::collection::vec((1_u8..=118, built_amount(), 0_usize..4), 1..8)) {
+            let text: String = terms
+                .iter()
+                .map(|(z, amount, kind)| {
+                    let symbol = Element::from_number(*z).unwrap();
+                    match kind {
+                        0 => format!("({symbol}2[]){amount}"),
+                        1 => format!("{symbol}(III,ls){amount}"),
+                        2 => format!("[{symbol}(-II)3O]{amount}"),
+                        _ => format!("{symbol}{amount} "),
+                    }
+                })
+                .collect();
+            if let Ok(formula) = parse(&text) {
+                prop_assert_eq!(parse(&formula.to_string()).unwrap(), formula);
+            }
         }
 
         #[test]

@@ -12,6 +12,7 @@ pub mod hazard;
 pub mod oxidation;
 pub mod radius;
 pub mod species;
+mod states;
 
 pub use amount::Amount;
 pub use composition::Composition;

@@ -1,19 +1,23 @@
 //! Oxidation states: the neutral assignments of charges to the elements of a formula, ranked.
 //!
-//! States are drawn from `data/elements.tsv`: those common in oxides and halides first, then the other main ones, then
-//! the rarer ones, each step at a penalty. A negative state is given only to an element more electronegative than every
-//! cation. Assignments that are equally common are parted by the Gibbs energies of formation of the binary
-//! oxides (`data/oxide_gibbs.tsv`): oxygen goes where it is bound most firmly, so FeTiO3 is Fe(II)Ti(IV) and CuFeO2
-//! Cu(I)Fe(III); aqueous electrode potentials would get the second wrong. Mixed valence of
-//! one element, between two neighbouring common states, is tried only when no uniform assignment is neutral.
+//! 1. Uniform assignments from the states of `data/elements.tsv` that are common in oxides and halides, and from the
+//!    other main ones at a penalty.
+//! 2. If none is neutral: rarer states of elements of variable valence, and mixed valence of one element between
+//!    neighbouring states, ranked together. SrFeO3 is Fe(IV), but Li0.5CoO2 is Co(III) and Co(IV).
+//!
+//! A negative state is given only to an element more electronegative than every cation. Assignments of equal penalty
+//! are parted by the Gibbs energies of formation of the binary oxides (`data/oxide_gibbs.tsv`): oxygen goes where it is
+//! bound most firmly, so FeTiO3 is Fe(II)Ti(IV) and CuFeO2 Cu(I)Fe(III); aqueous electrode potentials would get the
+//! second wrong. States that these elements skip (Pb(III), Sb(IV), Au(II), ...) are never chosen: C. M. Varma, Phys.
+//! Rev. Lett. 61, 2713 (1988), cited from memory.
 
-use super::amount::{Amount, to_f64};
+use super::amount::Amount;
 use super::composition::Composition;
 use super::formula::{Formula, Named, numeral};
+use super::states::{MAIN, PLACE, clashes, redox_energy, states_of};
 use super::{Element, Ion, Spin};
 use itertools::Itertools;
 use num_traits::Zero;
-use std::sync::LazyLock;
 
 /// A neutral assignment that was not taken.
 #[derive(Clone, Debug, PartialEq)]
@@ -79,6 +83,14 @@ pub enum OxidationError {
         /// Named limit.
         limit: usize,
     },
+    /// Nothing can be negative.
+    #[error(
+        "`{formula}` has no anion: none of its elements has a common negative state and is more electronegative than all others; state the charges in Stock notation if they are meant, for example `Mo(IV)Te(-II)2`"
+    )]
+    NoAnion {
+        /// The formula.
+        formula: String,
+    },
     /// Polyatomic ions.
     #[error(
         "`{formula}` needs {ion}, which forms {examples}; complex ions are not modelled, only ions of single atoms in the interstices of a packing"
@@ -94,24 +106,21 @@ pub enum OxidationError {
 }
 
 /// Most assignments tried for one formula.
-pub const MAX_ASSIGNMENTS: usize = 1_000_000;
+pub const MAX_ASSIGNMENTS: usize = 200_000;
 
 /// Rivals kept.
 const MAX_RIVALS: usize = 10;
 
-/// An equally common rival whose oxides are less than this above the best is told as a near tie, eV per formula unit.
+/// A rival at most one place less common, whose oxides are less than this above the best (or not tabulated), is told as
+/// a near tie; eV per formula unit.
 pub const NEAR_TIE: f64 = 0.6;
 
-/// Penalty of each further place in the list of dominant states.
-const PLACE: f64 = 1.0;
-/// Penalty of a main state that is not among the dominant ones.
-const MAIN: f64 = 4.0;
-/// Penalty of a rarer state.
-const EXTENDED: f64 = 7.0;
-/// Faraday constant in kJ/mol per eV (CODATA 2018).
-const KJ_PER_MOL_PER_EV: f64 = 96.485_332;
 /// Penalty of mixed valence.
 const MIXED: f64 = 2.0;
+
+/// Highest states of 3d cations that sulfide, selenide and telluride leave unreduced; above them the anions are
+/// likelier to have paired, as in pyrite, Fe(II)S2 (common practice, no source).
+const HIGHEST_BESIDE_SULFIDE: [(&str, i8); 5] = [("Mn", 3), ("Fe", 3), ("Co", 3), ("Ni", 2), ("Cu", 1)];
 
 /// One element (or one stated ion) of the formula and the states it may take.
 struct Term {
@@ -133,23 +142,14 @@ pub fn assign(formula: &Formula) -> Result<Assignment, OxidationError> {
     if terms.iter().all(|t| t.stated) {
         return stated(formula, &terms, vacancies);
     }
-    let count = terms.iter().try_fold(1_usize, |n, t| n.checked_mul(t.states.len()));
-    if count.is_none_or(|n| n > MAX_ASSIGNMENTS) {
-        return Err(OxidationError::TooMany { formula: formula.to_string(), limit: MAX_ASSIGNMENTS });
-    }
-    let allowed: Vec<Vec<(i8, f64)>> = terms
-        .iter()
-        .map(|t| t.states.iter().copied())
-        .multi_cartesian_product()
-        .filter(|states| electronegative_enough(&terms, states))
-        .collect();
-    let mut found: Vec<Candidate> = allowed
-        .iter()
-        .filter(|states| net(&terms, states).is_zero())
-        .map(|states| uniform(&terms, states, vacancies))
-        .collect();
+    let common: Vec<_> = terms.iter().map(|t| t.states.iter().copied().filter(|(_, p)| *p <= MAIN).collect()).collect();
+    let every: Vec<_> = terms.iter().map(|t| t.states.clone()).collect();
+    let allowed = choices(formula, &terms, &common)?;
+    let mut found = neutral(&terms, &allowed, vacancies);
     if found.is_empty() {
-        found = mixed(&terms, &allowed, vacancies);
+        let allowed = choices(formula, &terms, &every)?;
+        found = neutral(&terms, &allowed, vacancies);
+        found.extend(mixed(&terms, &allowed, vacancies));
     }
     let redox = |c: &Candidate| c.redox.unwrap_or(f64::INFINITY);
     found.sort_by(|a, b| a.penalty.total_cmp(&b.penalty).then(redox(a).total_cmp(&redox(b))));
@@ -167,20 +167,37 @@ pub fn assign(formula: &Formula) -> Result<Assignment, OxidationError> {
 /// # Errors
 /// [`OxidationError::ComplexIon`].
 pub fn refuse_complex_ions(composition: &Composition) -> Result<(), OxidationError> {
-    const GIVEAWAYS: [(&str, i8, &str); 4] = [
-        ("H", 1, "hydroxide, water, ammonium and the like"),
-        ("C", 4, "carbonate"),
-        ("N", 5, "nitrate"),
-        ("N", 3, "nitrite"),
-    ];
-    for (ion, _) in &composition.ions {
-        if let Some((_, _, examples)) =
-            GIVEAWAYS.iter().find(|(s, q, _)| ion.element.symbol() == *s && ion.charge == *q)
-        {
-            return Err(OxidationError::ComplexIon { formula: composition.formula_text(), ion: *ion, examples });
-        }
+    let complex = |ion: &Ion| match (ion.element.symbol(), ion.charge) {
+        ("H", 1) => Some("hydroxide, water, ammonium and the like"),
+        ("H", -1) if composition.ions.iter().any(|(i, _)| i.element.symbol() == "B") => Some("borohydride"),
+        ("C", 1..) => Some("carbonate, oxalate, cyanide and the like"),
+        ("N", 1..) => Some("nitrate, nitrite and the like"),
+        ("Hg", 1) => Some("the pair Hg2(2+)"),
+        _ => None,
+    };
+    match composition.ions.iter().find_map(|(ion, _)| complex(ion).map(|examples| (*ion, examples))) {
+        Some((ion, examples)) => Err(OxidationError::ComplexIon { formula: composition.formula_text(), ion, examples }),
+        None => Ok(()),
     }
-    Ok(())
+}
+
+/// All choices of one state for each term in which the anions are the most electronegative.
+fn choices(
+    formula: &Formula,
+    terms: &[Term],
+    states: &[Vec<(i8, f64)>],
+) -> Result<Vec<Vec<(i8, f64)>>, OxidationError> {
+    let count = states.iter().try_fold(1_usize, |n, s| n.checked_mul(s.len()));
+    if count.is_none_or(|n| n > MAX_ASSIGNMENTS) {
+        return Err(OxidationError::TooMany { formula: formula.to_string(), limit: MAX_ASSIGNMENTS });
+    }
+    let all = states.iter().map(|s| s.iter().copied()).multi_cartesian_product();
+    Ok(all.filter(|states| electronegative_enough(terms, states)).collect())
+}
+
+fn neutral(terms: &[Term], allowed: &[Vec<(i8, f64)>], vacancies: Amount) -> Vec<Candidate> {
+    let neutral = allowed.iter().filter(|states| net(terms, states).is_zero());
+    neutral.map(|states| uniform(terms, states, vacancies)).collect()
 }
 
 fn terms(formula: &Formula) -> Result<Vec<Term>, OxidationError> {
@@ -197,20 +214,6 @@ fn terms(formula: &Formula) -> Result<Vec<Term>, OxidationError> {
         terms.push(Term { element, amount: part.amount, spin, stated: charge.is_some(), states });
     }
     Ok(terms)
-}
-
-/// States with penalties; negative ones only where common, since rarer ones stand for bonds between like atoms.
-fn states_of(element: Element) -> Vec<(i8, f64)> {
-    let dominant = element.dominant_states();
-    let mut states: Vec<(i8, f64)> = dominant.iter().enumerate().map(|(i, q)| (*q, PLACE * i as f64)).collect();
-    for (list, penalty) in [(element.main_states(), MAIN), (element.extended_states(), EXTENDED)] {
-        for q in list.iter().filter(|q| **q > 0) {
-            if states.iter().all(|(seen, _)| seen != q) {
-                states.push((*q, penalty));
-            }
-        }
-    }
-    states
 }
 
 /// Every anion is more electronegative than every cation, stated ions excepted.
@@ -232,76 +235,47 @@ fn net(terms: &[Term], states: &[(i8, f64)]) -> Amount {
 }
 
 fn uniform(terms: &[Term], states: &[(i8, f64)], vacancies: Amount) -> Candidate {
-    let ions: Vec<(Ion, Amount)> = terms
-        .iter()
-        .zip(states)
-        .map(|(t, (q, _))| (Ion { element: t.element, charge: *q, spin: t.spin }, t.amount))
-        .collect();
-    let common: f64 = states.iter().map(|(_, p)| p).sum();
-    let redox = redox_energy(&ions);
-    Candidate { composition: Composition { ions: merged(ions), vacancies }, penalty: common, redox }
+    let ions =
+        terms.iter().zip(states).map(|(t, (q, _))| (Ion { element: t.element, charge: *q, spin: t.spin }, t.amount));
+    candidate(ions.collect(), states.iter().map(|(_, p)| p).sum(), vacancies)
 }
 
-/// One element split between two neighbouring dominant states, all others uniform.
+fn candidate(ions: Vec<(Ion, Amount)>, penalty: f64, vacancies: Amount) -> Candidate {
+    let states: Vec<(Element, i8)> = ions.iter().map(|(ion, _)| (ion.element, ion.charge)).collect();
+    let redox = redox_energy(&ions);
+    let composition = Composition { ions: merged(ions), vacancies };
+    Candidate { composition, penalty: penalty + clashes(&states), redox }
+}
+
+/// One element split between two neighbouring states, all others uniform.
 fn mixed(terms: &[Term], allowed: &[Vec<(i8, f64)>], vacancies: Amount) -> Vec<Candidate> {
     let mut found: Vec<Candidate> = Vec::new();
     for states in allowed {
         for (i, term) in terms.iter().enumerate().filter(|(_, t)| !t.stated) {
-            let mut ladder: Vec<i8> = term.element.dominant_states().iter().copied().filter(|q| *q > 0).collect();
-            ladder.sort_unstable();
-            let lower = states[i].0;
-            let Some(upper) = ladder.iter().copied().find(|q| *q > lower) else { continue };
-            if !ladder.contains(&lower) {
-                continue;
-            }
+            let (lower, _) = states[i];
+            let above = term.states.iter().filter(|(q, _)| *q > lower && lower > 0);
+            let Some(&(upper, upper_penalty)) = above.min_by_key(|(q, _)| *q) else { continue };
             // amount·lower + x (upper − lower) + rest = 0
             let x = -net(terms, states) / i128::from(upper - lower);
             if x <= Amount::zero() || x >= term.amount {
                 continue;
             }
             let mut ions: Vec<(Ion, Amount)> = Vec::new();
-            for (t, (q, _)) in terms.iter().zip(states) {
+            let mut penalty = MIXED;
+            for (k, (t, (q, p))) in terms.iter().zip(states).enumerate() {
                 let ion = |charge| Ion { element: t.element, charge, spin: t.spin };
-                if std::ptr::eq(t, term) {
-                    ions.push((ion(lower), t.amount - x));
-                    ions.push((ion(upper), x));
+                if k == i {
+                    ions.extend([(ion(lower), t.amount - x), (ion(upper), x)]);
+                    penalty += p.max(upper_penalty);
                 } else {
                     ions.push((ion(*q), t.amount));
+                    penalty += p;
                 }
             }
-            let common: f64 = states.iter().map(|(_, p)| p).sum();
-            let redox = redox_energy(&ions);
-            let composition = Composition { ions: merged(ions), vacancies };
-            if found.iter().all(|c| c.composition != composition) {
-                found.push(Candidate { composition, penalty: common + MIXED, redox });
-            }
+            found.push(candidate(ions, penalty, vacancies));
         }
     }
     found
-}
-
-/// Σ amount · ΔG of the binary oxides, eV per formula unit; `None` when an element of variable valence is in a state
-/// that the table lacks. Only differences between assignments of the same formula mean anything.
-fn redox_energy(ions: &[(Ion, Amount)]) -> Option<f64> {
-    static TABLE: LazyLock<Vec<(&'static str, i8, f64)>> = LazyLock::new(|| {
-        include_str!("data/oxide_gibbs.tsv")
-            .lines()
-            .filter(|line| !line.starts_with('#'))
-            .filter_map(|line| {
-                let mut f = line.split('\t');
-                Some((f.next()?, f.next()?.parse().ok()?, f.next()?.parse::<f64>().ok()? / KJ_PER_MOL_PER_EV))
-            })
-            .collect()
-    });
-    let energy = |(ion, amount): &(Ion, Amount)| {
-        let single = ion.element.dominant_states().iter().filter(|q| **q > 0).count() <= 1;
-        let row = TABLE.iter().find(|(symbol, q, _)| *symbol == ion.element.symbol() && *q == ion.charge);
-        match row {
-            Some((_, _, per_mole)) => Some(to_f64(amount) * per_mole),
-            None => (single || ion.charge <= 0).then_some(0.0),
-        }
-    };
-    ions.iter().map(energy).sum()
 }
 
 /// A formula may state the same ion that a mixed assignment gives.
@@ -328,22 +302,17 @@ fn stated(formula: &Formula, terms: &[Term], vacancies: Amount) -> Result<Assign
 
 fn closest(formula: &Formula, terms: &[Term], allowed: &[Vec<(i8, f64)>], vacancies: Amount) -> OxidationError {
     let size = |charge: Amount| if charge < Amount::zero() { -charge } else { charge };
-    let best = allowed.iter().filter(|s| s.iter().all(|(_, p)| *p < MAIN)).min_by(|a, b| {
-        let penalty = |s: &[(i8, f64)]| s.iter().map(|(_, p)| p).sum::<f64>();
-        size(net(terms, a)).cmp(&size(net(terms, b))).then(penalty(a).total_cmp(&penalty(b)))
-    });
-    match best.or(allowed.first()) {
+    let penalty = |s: &[(i8, f64)]| s.iter().map(|(_, p)| p).sum::<f64>();
+    let ionic = allowed.iter().filter(|s| s.iter().any(|(q, _)| *q < 0));
+    let best =
+        ionic.min_by(|a, b| size(net(terms, a)).cmp(&size(net(terms, b))).then(penalty(a).total_cmp(&penalty(b))));
+    match best {
         Some(states) => OxidationError::NotNeutral {
             formula: formula.to_string(),
             closest: uniform(terms, states, vacancies).composition.to_string(),
             charge: signed(&net(terms, states)),
         },
-        // No anion is possible: metals alone, or noble gases.
-        None => OxidationError::NotNeutral {
-            formula: formula.to_string(),
-            closest: "no anion among its elements".into(),
-            charge: "unknown".into(),
-        },
+        None => OxidationError::NoAnion { formula: formula.to_string() },
     }
 }
 
@@ -355,128 +324,27 @@ fn cautions(best: &Candidate, rivals: &[Candidate]) -> Vec<String> {
     let mut cautions = Vec::new();
     let near = |r: &&Candidate| {
         let gap = best.redox.zip(r.redox).map(|(p, q)| q - p);
-        r.penalty - best.penalty < 1e-9 && gap.is_none_or(|gap| gap < NEAR_TIE)
+        r.penalty - best.penalty <= PLACE && gap.is_none_or(|gap| gap < NEAR_TIE)
     };
-    if let Some(rival) = rivals.first().filter(near) {
+    if let Some(rival) = rivals.iter().find(near) {
         cautions.push(format!(
             "the charges are a near tie: taken `{}`, nearly as likely `{}`; state them in Stock notation to decide",
             best.composition, rival.composition
         ));
     }
-    for (ion, _) in &best.composition.ions {
-        if ion.charge > 0 && !ion.element.dominant_states().contains(&ion.charge) {
+    let pairing = |symbol: &str| matches!(symbol, "S" | "Se" | "Te");
+    let paired = best.composition.anions().map(|(ion, _)| ion.element).find(|e| pairing(e.symbol()));
+    for (ion, _) in best.composition.cations() {
+        let name = format!("{}({})", ion.element, numeral(ion.charge));
+        let reduced = HIGHEST_BESIDE_SULFIDE.iter().any(|(s, q)| *s == ion.element.symbol() && ion.charge > *q);
+        if let Some(anion) = paired.filter(|_| reduced) {
             cautions.push(format!(
-                "{}({}) is not a common state; state the charges in Stock notation if it is not meant",
-                ion.element,
-                numeral(ion.charge)
+                "{name} is doubtful beside {anion}(-II): pairs of {anion} atoms, as in pyrite, are likelier and are not modelled"
             ));
+        } else if !ion.element.dominant_states().contains(&ion.charge) {
+            cautions
+                .push(format!("{name} is not a common state; state the charges in Stock notation if it is not meant"));
         }
     }
     cautions
-}
-
-#[cfg(test)]
-mod tests {
-    use super::super::formula;
-    use super::*;
-
-    fn assigned(text: &str) -> String {
-        assign(&formula::parse(text).unwrap()).unwrap_or_else(|e| panic!("{text}: {e}")).best.to_string()
-    }
-
-    /// Oxidation states as any textbook of inorganic chemistry gives them (common practice, no source).
-    #[test]
-    fn textbook_states_are_found() {
-        for (text, want) in [
-            ("Fe3O4", "Fe(II)Fe(III)2O(-II)4"),
-            ("Mn3O4", "Mn(II)Mn(III)2O(-II)4"),
-            ("Pb3O4", "Pb(II)2Pb(IV)O(-II)4"),
-            ("LiMn2O4", "Li(I)Mn(III)Mn(IV)O(-II)4"),
-            ("BaTiO3", "Ba(II)Ti(IV)O(-II)3"),
-            ("Na3AlF6", "Na(I)3Al(III)F(-I)6"),
-            ("CuFeO2", "Cu(I)Fe(III)O(-II)2"),
-            ("FeTiO3", "Fe(II)Ti(IV)O(-II)3"),
-            ("Ce0.9Gd0.1O1.95", "Ce(IV)0.9Gd(III)0.1O(-II)1.95"),
-            ("KMnF3", "K(I)Mn(II)F(-I)3"),
-            ("CsPbBr3", "Cs(I)Pb(II)Br(-I)3"),
-            ("Li3YCl6", "Li(I)3Y(III)Cl(-I)6"),
-            ("La2CuO4", "La(III)2Cu(II)O(-II)4"),
-            ("ZrSiO4", "Zr(IV)Si(IV)O(-II)4"),
-            ("Y3Al5O12", "Y(III)3Al(III)5O(-II)12"),
-            ("LiCoO2", "Li(I)Co(III)O(-II)2"),
-            ("CoFe2O4", "Co(II)Fe(III)2O(-II)4"),
-            ("MnFe2O4", "Mn(II)Fe(III)2O(-II)4"),
-            ("NiO", "Ni(II)O(-II)"),
-            ("MoS2", "Mo(IV)S(-II)2"),
-            ("SrFeO3", "Sr(II)Fe(IV)O(-II)3"),
-            ("KNbO3", "K(I)Nb(V)O(-II)3"),
-            ("PbTiO3", "Pb(II)Ti(IV)O(-II)3"),
-            ("Cu2O", "Cu(I)2O(-II)"),
-            ("CuO", "Cu(II)O(-II)"),
-            ("V2O5", "V(V)2O(-II)5"),
-            ("WO3", "W(VI)O(-II)3"),
-            ("UO2", "U(IV)O(-II)2"),
-            ("U3O8", "U(V)2U(VI)O(-II)8"),
-            ("CaF2", "Ca(II)F(-I)2"),
-            ("ZnS", "Zn(II)S(-II)"),
-            ("SnO2", "Sn(IV)O(-II)2"),
-            ("SnO", "Sn(II)O(-II)"),
-            ("Eu2O3", "Eu(III)2O(-II)3"),
-            ("EuO", "Eu(II)O(-II)"),
-            ("LiFePO4", "Li(I)Fe(II)P(V)O(-II)4"),
-            ("Na2FePO4F", "Na(I)2Fe(II)P(V)O(-II)4F(-I)"),
-            ("Ag2S", "Ag(I)2S(-II)"),
-            ("TlCl", "Tl(I)Cl(-I)"),
-            ("BiFeO3", "Bi(III)Fe(III)O(-II)3"),
-            ("Si3N4", "Si(IV)3N(-III)4"),
-            ("Cu2ZnSnS4", "Cu(I)2Zn(II)Sn(IV)S(-II)4"),
-            ("CuInSe2", "Cu(I)In(III)Se(-II)2"),
-            ("Cs2AgBiBr6", "Cs(I)2Ag(I)Bi(III)Br(-I)6"),
-            ("K2PtCl6", "K(I)2Pt(IV)Cl(-I)6"),
-            ("CuCrO2", "Cu(I)Cr(III)O(-II)2"),
-            ("Y0.08Zr0.92O1.96", "Y(III)0.08Zr(IV)0.92O(-II)1.96"),
-            ("OF2", "O(II)F(-I)2"),
-        ] {
-            assert_eq!(assigned(text), want, "{text}");
-        }
-    }
-
-    #[test]
-    fn stated_charges_are_kept() {
-        assert_eq!(assigned("Fe(II)Fe(III)2O4"), "Fe(II)Fe(III)2O(-II)4");
-        assert_eq!(assigned("FeO(-II)"), "Fe(II)O(-II)");
-        let wrong = assign(&formula::parse("Fe(III)O(-II)").unwrap()).unwrap_err();
-        assert!(matches!(wrong, OxidationError::StatedNotNeutral { ref charge, .. } if charge == "+1"), "{wrong}");
-    }
-
-    #[test]
-    fn what_is_not_neutral_is_shown_with_the_closest() {
-        let error = assign(&formula::parse("NaCl2").unwrap()).unwrap_err();
-        assert!(matches!(error, OxidationError::NotNeutral { ref charge, .. } if charge == "-1"), "{error}");
-        assert!(assign(&formula::parse("FeAl").unwrap()).is_err());
-        assert!(matches!(assign(&formula::parse("HeO").unwrap()), Err(OxidationError::NoStates { .. })));
-    }
-
-    #[test]
-    fn ammonium_is_refused_as_complex() {
-        let assignment = assign(&formula::parse("(NH4)Cl").unwrap()).unwrap();
-        let error = refuse_complex_ions(&assignment.best).unwrap_err();
-        assert!(error.to_string().contains("complex ions are not modelled"), "{error}");
-    }
-
-    #[test]
-    fn doubts_are_spoken() {
-        let assignment = assign(&formula::parse("SrFeO3").unwrap()).unwrap();
-        assert!(
-            assignment.cautions.iter().any(|c| c.contains("Fe(IV) is not a common state")),
-            "{:?}",
-            assignment.cautions
-        );
-    }
-
-    #[test]
-    fn the_table_of_oxides_is_whole() {
-        let rows = include_str!("data/oxide_gibbs.tsv").lines().filter(|l| !l.starts_with('#')).count();
-        assert_eq!(rows, 37);
-    }
 }

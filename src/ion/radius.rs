@@ -150,7 +150,7 @@ pub fn rows(element: Element, charge: i8) -> impl Iterator<Item = &'static Row> 
 /// Radius of `ion` at a coordination number.
 ///
 /// Square and pyramidal rows are passed over. Where the table parts spins and the ion states none, high spin is taken,
-/// but low spin for Co³⁺, as it is in nearly all oxides (common practice, no source); where the stated spin has no
+/// but low spin for Co³⁺ and Ni³⁺, as in nearly all oxides (common practice, no source); where the stated spin has no
 /// row, the other's are used. Between tabulated coordination numbers the radius is interpolated linearly; outside
 /// their range it is that of the nearest.
 ///
@@ -158,7 +158,7 @@ pub fn rows(element: Element, charge: i8) -> impl Iterator<Item = &'static Row> 
 /// [`RadiusError`] when the table has no row of this ion.
 pub fn radius(ion: &Ion, coordination: u8, set: RadiusSet) -> Result<Radius, RadiusError> {
     let spin = ion.spin.unwrap_or(match (ion.element.symbol(), ion.charge) {
-        ("Co", 3) => Spin::Low,
+        ("Co" | "Ni", 3) => Spin::Low,
         _ => Spin::High,
     });
     let plain = || rows(ion.element, ion.charge).filter(|row| row.shape.is_empty());
@@ -268,12 +268,14 @@ mod tests {
         }
     }
 
-    /// The same table: Fe²⁺ VI 0.61 low and 0.78 high spin, Co³⁺ VI 0.545 low and 0.61 high spin; crystal set +0.14.
+    /// The same table: Fe²⁺ VI 0.61 low and 0.78 high spin, Co³⁺ VI 0.545 low and 0.61 high spin, Ni³⁺ VI 0.56 low spin;
+    /// crystal set +0.14.
     #[test]
     fn spin_and_set_are_told_apart() {
         let low = Ion { spin: Some(Spin::Low), ..ion("Fe", 2) };
         assert_eq!(radius(&low, 6, RadiusSet::Effective).unwrap().angstrom, 0.61);
         assert_eq!(radius(&ion("Co", 3), 6, RadiusSet::Effective).unwrap().angstrom, 0.545);
+        assert_eq!(radius(&ion("Ni", 3), 6, RadiusSet::Effective).unwrap().angstrom, 0.56);
         let high = Ion { spin: Some(Spin::High), ..ion("Co", 3) };
         assert_eq!(radius(&high, 6, RadiusSet::Effective).unwrap().angstrom, 0.61);
         assert_eq!(radius(&ion("O", -2), 6, RadiusSet::Crystal).unwrap().angstrom, 1.26);
