@@ -152,3 +152,8 @@ pub const MAX_ATOMS: usize = 1_000_000;
 pub(crate) fn shown(amount: &Amount) -> String {
     if amount.is_integer() { amount.to_string() } else { format!("{:.3}", crate::ion::amount::to_f64(amount)) }
 }
+
+/// A number of things, as a sentence says it; for nouns that take an `s`.
+pub(crate) fn counted(n: usize, noun: &str) -> String {
+    format!("{n} {noun}{}", if n == 1 { "" } else { "s" })
+}

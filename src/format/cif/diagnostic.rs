@@ -1,6 +1,7 @@
 //! Faults of a file with their places: collected while parsing, shown with the line and a caret.
 
 use annotate_snippets::{AnnotationKind, Level, Renderer, Snippet};
+use serde::Serialize;
 use std::ops::Range;
 
 /// Faults of one kind that are kept; the rest is counted.
@@ -19,7 +20,8 @@ pub enum Mode {
 }
 
 /// How grave a diagnostic is.
-#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Serialize)]
+#[serde(rename_all = "lowercase")]
 pub enum Severity {
     /// The file or block cannot be used.
     Error,
@@ -28,7 +30,7 @@ pub enum Severity {
 }
 
 /// A fault or an assumption, with its place.
-#[derive(Clone, Debug, PartialEq, Eq, thiserror::Error)]
+#[derive(Clone, Debug, PartialEq, Eq, Serialize, thiserror::Error)]
 #[error("line {line}, column {column}: {message}")]
 pub struct Diagnostic {
     /// How grave.

@@ -12,6 +12,7 @@ use super::nested::Nested;
 use super::number::Number;
 use super::source::{Source, Version};
 use super::value::{Ground, Kind, Span, Value};
+use crate::error::counted;
 use std::borrow::Cow;
 use std::collections::{HashMap, HashSet};
 
@@ -439,7 +440,10 @@ impl<'s> Parser<'s> {
             });
         } else if values == 0 {
             self.warn("cif::loop", token, || {
-                format!("this loop has {names} names and no values, which must be left out; it is taken as no rows")
+                format!(
+                    "this loop has {} and no values, which must be left out; it is taken as no rows",
+                    counted(names, "name")
+                )
             });
         } else if values % names != 0 {
             self.refuse_ragged(token, found);
@@ -457,8 +461,10 @@ impl<'s> Parser<'s> {
         let token = Token { start: place, end: place + 1, ..token };
         self.refuse("cif::loop", token, || {
             format!(
-                "the loop on line {line} has {names} names and {values} values: {rows} whole rows and {over} values \
-                 over; row {} does not come out{at_end}",
+                "the loop on line {line} has {} and {}: {} and {over} over; row {} does not come out{at_end}",
+                counted(names, "name"),
+                counted(values, "value"),
+                counted(rows, "whole row"),
                 odd + 1
             )
         });
