@@ -1,8 +1,8 @@
 //! `interstice vet`.
 
 use super::{Outcome, Radii, print};
-use interstice::crystal::Structure;
 use interstice::crystal::symmetry::{TOLERANCE, symmetrise};
+use interstice::crystal::{Occupant, Structure};
 use interstice::error::Error;
 use interstice::format::cif::{self, Diagnostic, Mode, ReadStructure, Source, parse, read_structures};
 use interstice::ion::formula::{Formula, Named, Part};
@@ -184,11 +184,16 @@ fn assign_charges(structure: &mut Structure) -> bool {
         .collect();
     let Ok(assignment) = oxidation::assign(&Formula { parts }) else { return false };
     let ions = assignment.best.ions;
-    for occupant in structure.sites.iter_mut().flat_map(|s| &mut s.occupants) {
+    let charged = |occupant: &Occupant| {
+        let mut charged = *occupant;
         let mut of_element = ions.iter().filter(|(ion, _)| ion.element == occupant.species.element);
         if let (Some((ion, _)), None) = (of_element.next(), of_element.next()) {
-            occupant.species.charge.get_or_insert(ion.charge);
+            charged.species.charge.get_or_insert(ion.charge);
         }
+        charged
+    };
+    for site in &mut structure.sites {
+        site.occupants = site.occupants.iter().map(charged).collect();
     }
     true
 }

@@ -29,7 +29,7 @@ pub struct Vetted {
 
 /// Labels of the sites of a finding.
 pub fn labels(read: &ReadStructure, finding: &Finding) -> Vec<String> {
-    finding.sites.iter().filter_map(|i| read.labels.get(*i).cloned()).collect()
+    finding.sites.iter().filter_map(|i| read.labels.get(*i).map(str::to_owned)).collect()
 }
 
 /// What people read.

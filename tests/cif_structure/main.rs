@@ -111,11 +111,10 @@ fn shared_sites_and_vacancies_survive_round_trips() {
         let element = site.occupants[0].species.element.symbol();
         let share = |symbol, charge, n, d| Occupant { species: ion(symbol, charge), occupancy: Amount::new(n, d) };
         site.occupants = match element {
-            "Mg" => {
-                vec![share("Mg", 2, 1, 2), share("Fe", 2, 1, 4), Occupant { occupancy: third, ..share("Fe", 3, 1, 4) }]
-            }
-            "Al" => vec![share("Al", 3, 7, 8), share("Fe", 3, 1, 16)],
-            _ => vec![share("O", -2, 123, 125)],
+            "Mg" => [share("Mg", 2, 1, 2), share("Fe", 2, 1, 4), Occupant { occupancy: third, ..share("Fe", 3, 1, 4) }]
+                .into(),
+            "Al" => [share("Al", 3, 7, 8), share("Fe", 3, 1, 16)].into(),
+            _ => [share("O", -2, 123, 125)].into(),
         };
     }
     check_round_trip(&structure, "shared");

@@ -49,7 +49,7 @@ fn real_files_agree_with_gemmi() {
             match structure {
                 Ok(found) => {
                     read += 1;
-                    let occupants = found.structure.sites.iter().flat_map(|s| &s.occupants);
+                    let occupants = found.structure.sites.iter().flat_map(|s| s.occupants.iter());
                     let atoms: f64 = occupants.map(|o| to_f64(&o.occupancy)).sum();
                     let theirs = gemmi.get(name.as_str()).copied().unwrap_or(f64::NAN);
                     let explained = DIFFERENT.iter().find(|(file, _)| *file == name);

@@ -396,8 +396,10 @@ impl<'s> Parser<'s> {
             self.name_of_column(&mut found);
         }
         while self.ahead.class.is_value() {
-            let span = self.value();
+            let span = self.value_ahead();
             found.values.push(span);
+            self.lexer.plain_words(|from, to| found.values.push(Span::new(Kind::Bare, from, to)));
+            self.advance();
         }
         self.check_loop(token, &mut found);
         if !found.names.is_empty() {
@@ -488,6 +490,13 @@ impl<'s> Parser<'s> {
 
     /// `data-value`, whatever stands before it. Call it only where a value begins.
     fn value(&mut self) -> Span {
+        let span = self.value_ahead();
+        self.advance();
+        span
+    }
+
+    /// The value that begins with the token ahead, which stays ahead.
+    fn value_ahead(&mut self) -> Span {
         let token = self.ahead;
         let span = match token.class {
             Class::Value(kind) => Span::new(kind, token.from, token.to),
@@ -495,7 +504,6 @@ impl<'s> Parser<'s> {
             _ => self.odd_value(token),
         };
         self.value_end = self.lexer.at;
-        self.advance();
         span
     }
 

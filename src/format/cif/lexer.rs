@@ -172,6 +172,30 @@ fn length_of_word(bytes: &[u8], nested: bool) -> usize {
     bytes.iter().position(|b| ends(*b)).unwrap_or(bytes.len())
 }
 
+/// Bytes that neither end an unquoted word nor, being brackets, make it odd in 2.0.
+const IS_PLAIN: [bool; 256] = {
+    let mut plain = [true; 256];
+    let ends = b" \t\n\r\x0B\x0C[]{}";
+    let mut i = 0;
+    while i < ends.len() {
+        plain[ends[i] as usize] = false;
+        i += 1;
+    }
+    plain
+};
+
+/// Bytes with which nothing but an unquoted value begins: no quote, name, comment, text field, and no keyword.
+const LEADS_PLAIN_WORD: [bool; 256] = {
+    let mut leads = IS_PLAIN;
+    let others = b"_#$;'\"dDsSlLgG";
+    let mut i = 0;
+    while i < others.len() {
+        leads[others[i] as usize] = false;
+        i += 1;
+    }
+    leads
+};
+
 /// First letters of the keywords: spares nearly all values the attempt to read one.
 fn may_lead_keyword(b: u8) -> bool {
     matches!(b.to_ascii_lowercase(), b'd' | b's' | b'l' | b'g')
@@ -277,6 +301,32 @@ impl<'s> Lexer<'s> {
             b'[' | b'{' if self.version == Version::Cif20 => self.bracket(Class::Open, start),
             b']' | b'}' if self.depth > 0 => self.bracket(Class::Close, start),
             _ => self.unquoted(start, lead),
+        }
+    }
+
+    /// Unquoted words that can be nothing but values, one after the other, with their places: most of a long loop. Stops
+    /// before any other token, which [`Self::token`] then takes. Outside lists and tables only.
+    pub fn plain_words(&mut self, mut take: impl FnMut(usize, usize)) {
+        let bytes = self.text.as_bytes();
+        loop {
+            let mut start = self.at;
+            while bytes.get(start).is_some_and(|b| is_blank(*b)) {
+                start += 1;
+            }
+            self.at = start;
+            if !bytes.get(start).is_some_and(|b| LEADS_PLAIN_WORD[*b as usize]) {
+                return;
+            }
+            let mut end = start + 1;
+            while bytes.get(end).is_some_and(|b| IS_PLAIN[*b as usize]) {
+                end += 1;
+            }
+            // A bracket is odd in 2.0: the word is left to the general way.
+            if bytes.get(end).is_some_and(|b| !is_blank(*b)) {
+                return;
+            }
+            take(start, end);
+            self.at = end;
         }
     }
 

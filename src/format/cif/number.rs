@@ -30,18 +30,16 @@ impl<'s> Number<'s> {
     pub fn parse(text: &'s str) -> Option<Self> {
         let bytes = text.as_bytes();
         let mut at = usize::from(matches!(bytes.first(), Some(b'+' | b'-')));
-        let start = at;
-        let whole = run_of_digits(&bytes[at..]);
+        let (whole, mut mantissa) = digits_of(&bytes[at..], 0);
         at += whole;
         let mut decimals = 0;
         if bytes.get(at) == Some(&b'.') {
-            decimals = run_of_digits(&bytes[at + 1..]);
+            (decimals, mantissa) = digits_of(&bytes[at + 1..], mantissa);
             at += 1 + decimals;
         }
         if whole + decimals == 0 {
             return None;
         }
-        let mantissa = &bytes[start..at];
         let mut exponent = 0;
         if matches!(bytes.get(at), Some(b'e' | b'E')) {
             let signed = usize::from(matches!(bytes.get(at + 1), Some(b'+' | b'-')));
@@ -51,13 +49,9 @@ impl<'s> Number<'s> {
             at = end;
         }
         let (digits, rest) = text.split_at(at);
-        let value = match whole_number(mantissa) {
-            Some(mantissa) if exponent.unsigned_abs() < 100 => {
-                let value = scaled(mantissa, exponent - decimals as i32);
-                value.map(|v| if bytes[0] == b'-' { -v } else { v })
-            }
-            _ => None,
-        };
+        let is_exact = whole + decimals <= EXACT_DIGITS && exponent.unsigned_abs() < 100;
+        let value = if is_exact { scaled(mantissa, exponent - decimals as i32) } else { None };
+        let value = value.map(|v| if bytes[0] == b'-' { -v } else { v });
         let value = value.or_else(|| digits.parse().ok()).filter(|v: &f64| v.is_finite())?;
         let su = match rest {
             "" => None,
@@ -81,10 +75,16 @@ fn run_of_digits(bytes: &[u8]) -> usize {
     bytes.iter().position(|b| !b.is_ascii_digit()).unwrap_or(bytes.len())
 }
 
-/// Digits, a point among them passed over, as a whole number if that is exact.
-fn whole_number(digits: &[u8]) -> Option<u64> {
-    (digits.len() <= EXACT_DIGITS)
-        .then(|| digits.iter().filter(|b| **b != b'.').fold(0, |number, digit| number * 10 + u64::from(digit - b'0')))
+/// How many digits come first, and the whole number that they continue, which is exact for up to [`EXACT_DIGITS`].
+fn digits_of(bytes: &[u8], mut number: u64) -> (usize, u64) {
+    for (count, b) in bytes.iter().enumerate() {
+        let digit = b.wrapping_sub(b'0');
+        if digit > 9 {
+            return (count, number);
+        }
+        number = number.wrapping_mul(10).wrapping_add(u64::from(digit));
+    }
+    (bytes.len(), number)
 }
 
 /// `mantissa` · 10^`exponent`, correctly rounded; `None` where one operation cannot do it.
@@ -96,10 +96,11 @@ fn scaled(mantissa: u64, exponent: i32) -> Option<f64> {
 /// `(12)` in units of 10^`exponent`.
 fn uncertainty(text: &str, exponent: i32) -> Option<f64> {
     let digits = text.strip_prefix('(')?.strip_suffix(')')?;
-    if digits.is_empty() || run_of_digits(digits.as_bytes()) < digits.len() {
+    let (count, number) = digits_of(digits.as_bytes(), 0);
+    if count == 0 || count < digits.len() {
         return None;
     }
-    let exact = whole_number(digits.as_bytes()).and_then(|number| scaled(number, exponent));
+    let exact = if count <= EXACT_DIGITS { scaled(number, exponent) } else { None };
     exact.or_else(|| format!("{digits}e{exponent}").parse().ok()).filter(|su: &f64| su.is_finite())
 }
 
