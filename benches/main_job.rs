@@ -1,10 +1,8 @@
-//! Speed of the stages: interstices, Ewald sums, every ordering, CIF.
+//! Speed of the stages: interstices, Ewald sums, every ordering.
 
 use criterion::{Criterion, criterion_group, criterion_main};
-use interstice::crystal::{Fractional, Lattice, Parameters, Site, Structure, Transformation};
+use interstice::crystal::{Fractional, Lattice, Transformation};
 use interstice::energy::PairTable;
-use interstice::format::cif::{Description, Document, read_structures, write};
-use interstice::ion::{Element, Ion};
 use interstice::ordering::{Contents, Parent, Problem, Progress, every};
 use interstice::packing::{Host, interstices};
 use nalgebra::Matrix3;
@@ -71,37 +69,9 @@ fn orderings(c: &mut Criterion) {
     });
 }
 
-fn cif(c: &mut Criterion) {
-    let n = 47;
-    let ions =
-        [Ion::new(Element::from_symbol("Mg").expect("Mg"), 2), Ion::new(Element::from_symbol("O").expect("O"), -2)];
-    let edge = 2.0 * f64::from(n);
-    let p = Parameters { a: edge, b: edge, c: edge, alpha: 90.0, beta: 90.0, gamma: 90.0 };
-    let sites = (0..n * n * n)
-        .map(|i| {
-            let at = |k: i32| f64::from(k) / f64::from(n);
-            let position = Fractional::new(at(i % n), at(i / n % n), at(i / n / n));
-            Site::full(position, ions[usize::try_from(i).unwrap_or(0) % 2].into())
-        })
-        .collect();
-    let structure = Structure { lattice: Lattice::from_parameters(&p).expect("a lattice"), sites };
-    let description = Description { explicit: true, ..Description::default() };
-    let text = write(&structure, &description).expect("a file");
-    let atoms = structure.sites.len();
-    c.bench_function(&format!("write a CIF of {atoms} atoms"), |b| {
-        b.iter(|| write(black_box(&structure), &description))
-    });
-    c.bench_function(&format!("read a CIF of {atoms} atoms"), |b| {
-        b.iter(|| {
-            let document = Document::parse(black_box(&text)).expect("a document");
-            read_structures(&document)
-        })
-    });
-}
-
 criterion_group! {
     name = main_job;
     config = Criterion::default().sample_size(10);
-    targets = holes, ewald, orderings, cif
+    targets = holes, ewald, orderings
 }
 criterion_main!(main_job);

@@ -18,6 +18,7 @@ use crate::recipe::{CellChoice, MAX_KEEP, Order, Pattern, Recipe};
 use crate::rules::{self, Finding, Terms};
 use crate::seating::{self, Plan, SeatRequest, Seating};
 use num_traits::Zero;
+use std::sync::Arc;
 
 /// Everything decided before any cell is filled.
 #[derive(Clone, Debug)]
@@ -408,7 +409,7 @@ impl Job<'_> {
         let mut sites = Vec::new();
         for (position, class) in filling.parent.positions.iter().zip(&filling.parent.class) {
             let n = Amount::from(filling.sites_in(*class) as i128);
-            let occupants: Vec<Occupant> = filling.classes[*class]
+            let occupants: Arc<[Occupant]> = filling.classes[*class]
                 .amounts
                 .iter()
                 .filter_map(|(kind, amount)| {

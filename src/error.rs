@@ -116,15 +116,15 @@ pub enum Error {
         /// `--replace` where it may be replaced.
         remedy: &'static str,
     },
-    /// A fault in a CIF.
-    #[error("{path}: {fault}")]
+    /// Faults in a CIF.
+    #[error("{report}")]
     Cif {
         /// Path.
         path: String,
-        /// The fault.
-        fault: crate::format::cif::Diagnostic,
-        /// The line at fault.
-        excerpt: String,
+        /// The faults.
+        faults: Vec<crate::format::cif::Diagnostic>,
+        /// Each fault with its place and the line that it stands on.
+        report: String,
     },
     /// No neutral amounts near the composition.
     #[error(
@@ -151,4 +151,9 @@ pub const MAX_ATOMS: usize = 1_000_000;
 /// An amount times a whole number, as a table shows it.
 pub(crate) fn shown(amount: &Amount) -> String {
     if amount.is_integer() { amount.to_string() } else { format!("{:.3}", crate::ion::amount::to_f64(amount)) }
+}
+
+/// A number of things, as a sentence says it; for nouns that take an `s`.
+pub(crate) fn counted(n: usize, noun: &str) -> String {
+    format!("{n} {noun}{}", if n == 1 { "" } else { "s" })
 }

@@ -8,7 +8,7 @@
 use interstice::build::{Built, build};
 use interstice::crystal::symmetry::{TOLERANCE, symmetrise};
 use interstice::crystal::{Fractional, Structure};
-use interstice::format::cif::{Description, Document, read_structures, write};
+use interstice::format::cif::{Description, Mode, Source, parse, read_structures, write};
 use interstice::ordering::Progress;
 use interstice::recipe::{CellChoice, Order, Recipe};
 use interstice::rules::Shells;
@@ -47,7 +47,8 @@ fn check(built: &Built) {
         for p1 in [false, true] {
             let text = write(&cell.structure, &Description { explicit: p1, ..Description::default() }).unwrap();
             assert!(text.is_ascii() && text.lines().all(|l| l.len() <= 80), "{text}");
-            let document = Document::parse(&text).unwrap();
+            let source = Source::decode("test", text.as_bytes()).unwrap();
+            let document = parse(&source, Mode::Strict).unwrap();
             let read = read_structures(&document).remove(0).unwrap();
             assert!(read.warnings.is_empty(), "{:?}", read.warnings);
             assert_eq!(group(&read.structure), group(&cell.structure));
@@ -278,7 +279,8 @@ mod random_recipes {
                 for cell in &built.cells {
                     prop_assert_eq!(cell.structure.charge(), Some(0.into()));
                     let text = write(&cell.structure, &Description::default()).unwrap();
-                    let document = Document::parse(&text).unwrap();
+                    let source = Source::decode("test", text.as_bytes()).unwrap();
+            let document = parse(&source, Mode::Strict).unwrap();
                     let read = read_structures(&document).remove(0).unwrap();
                     prop_assert_eq!(group(&read.structure), group(&cell.structure));
                     same(&read.structure, &cell.structure);

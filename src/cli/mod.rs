@@ -96,7 +96,6 @@ fn report(error: &Error) -> String {
     };
     match error {
         Error::Formula(e) => excerpt(&e.text, e.column, 1, "formula", "here"),
-        Error::Cif { path, fault, excerpt: line } => excerpt(line, fault.column, fault.line, path, "here"),
         other => other.to_string(),
     }
 }

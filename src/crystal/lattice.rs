@@ -22,6 +22,9 @@ impl Fractional {
     /// The same position reduced to [0, 1) on each axis.
     pub fn reduced(&self) -> Self {
         Self(self.0.map(|x| {
+            if (0.0..1.0).contains(&x) {
+                return x;
+            }
             let r = x.rem_euclid(1.0);
             // rem_euclid of a tiny negative number rounds up to 1.
             if r >= 1.0 { 0.0 } else { r }

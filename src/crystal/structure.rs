@@ -4,6 +4,7 @@ use super::{Fractional, Lattice};
 use crate::ion::{Amount, Species};
 use num_traits::Zero;
 use std::collections::BTreeMap;
+use std::sync::Arc;
 
 /// A species and its share of a site.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
@@ -19,14 +20,14 @@ pub struct Occupant {
 pub struct Site {
     /// Position, each coordinate in [0, 1).
     pub position: Fractional,
-    /// Who holds it.
-    pub occupants: Vec<Occupant>,
+    /// Who holds it. Sites with the same occupants may share them: a large cell has few different ones.
+    pub occupants: Arc<[Occupant]>,
 }
 
 impl Site {
     /// A site wholly held by one species.
     pub fn full(position: Fractional, species: Species) -> Self {
-        Self { position: position.reduced(), occupants: vec![Occupant { species, occupancy: Amount::from(1) }] }
+        Self { position: position.reduced(), occupants: Arc::new([Occupant { species, occupancy: Amount::from(1) }]) }
     }
 }
 
@@ -43,7 +44,7 @@ impl Structure {
     /// How much of each species the cell holds, in order of element and charge.
     pub fn amounts(&self) -> BTreeMap<Species, Amount> {
         let mut amounts = BTreeMap::new();
-        for occupant in self.sites.iter().flat_map(|site| &site.occupants) {
+        for occupant in self.sites.iter().flat_map(|site| site.occupants.iter()) {
             *amounts.entry(occupant.species).or_insert_with(Amount::zero) += occupant.occupancy;
         }
         amounts

@@ -15,6 +15,7 @@ use moyo::data::{
 use nalgebra::{Matrix3, Vector3};
 use std::collections::BTreeMap;
 use std::fmt;
+use std::sync::Arc;
 
 /// Default distance within which positions count as symmetric images of each other, Å.
 pub const TOLERANCE: f64 = 1e-3;
@@ -336,7 +337,7 @@ fn preferred(p: &Fractional, q: &Fractional) -> std::cmp::Ordering {
 }
 
 /// A number for each distinct set of occupants, and the sets.
-fn kinds_of(structure: &Structure) -> (Vec<i32>, Vec<Vec<Occupant>>) {
+fn kinds_of(structure: &Structure) -> (Vec<i32>, Vec<Arc<[Occupant]>>) {
     let key = |site: &Site| {
         let mut key: Vec<_> = site.occupants.iter().map(|o| (o.species, o.occupancy)).collect();
         key.sort_unstable();

@@ -30,7 +30,7 @@ pub fn write(structure: &Structure, comment: &str) -> Result<String, XyzError> {
     let comment: String = comment.chars().map(|c| if c.is_control() { ' ' } else { c }).collect();
     let mut out = format!("{}\n{comment}\n", structure.sites.len());
     for (idx, site) in structure.sites.iter().enumerate() {
-        match site.occupants.as_slice() {
+        match &site.occupants[..] {
             [only] if only.occupancy.is_one() => {
                 // Adding 0 turns -0 into 0.
                 let r = structure.lattice.cartesian(&site.position).0.map(|x| (x * 1e8).round() / 1e8 + 0.0);
@@ -50,7 +50,7 @@ pub fn write(structure: &Structure, comment: &str) -> Result<String, XyzError> {
 #[cfg(test)]
 mod tests {
     use super::*;
-    use crate::crystal::{Fractional, Lattice, Parameters, Site};
+    use crate::crystal::{Fractional, Lattice, Occupant, Parameters, Site};
     use crate::ion::{Amount, Element, Ion};
 
     fn halite() -> Structure {
@@ -78,7 +78,8 @@ mod tests {
     #[test]
     fn shared_sites_are_refused() {
         let mut structure = halite();
-        structure.sites[1].occupants[0].occupancy = Amount::new(1, 2);
+        let half = Occupant { occupancy: Amount::new(1, 2), ..structure.sites[1].occupants[0] };
+        structure.sites[1].occupants = [half].into();
         let error = write(&structure, "").unwrap_err().to_string();
         assert_eq!(
             error,

@@ -1,6 +1,6 @@
 //! What the rules say of a structure that was read.
 
-use crate::format::cif::ReadStructure;
+use crate::format::cif::{Diagnostic, ReadStructure};
 use crate::rules::Finding;
 use serde::Serialize;
 
@@ -20,7 +20,7 @@ pub struct Vetted {
     /// Whether charges were assigned here because the file states none.
     pub charges_assigned: bool,
     /// Warnings of the reader, with their places.
-    pub warnings: Vec<String>,
+    pub warnings: Vec<Diagnostic>,
     /// Findings.
     pub findings: Vec<Finding>,
     /// Labels of the sites that each finding names.
@@ -29,7 +29,7 @@ pub struct Vetted {
 
 /// Labels of the sites of a finding.
 pub fn labels(read: &ReadStructure, finding: &Finding) -> Vec<String> {
-    finding.sites.iter().filter_map(|i| read.labels.get(*i).cloned()).collect()
+    finding.sites.iter().filter_map(|i| read.labels.get(*i).map(str::to_owned)).collect()
 }
 
 /// What people read.
@@ -37,7 +37,7 @@ pub fn text(vetted: &Vetted) -> String {
     let group = vetted.space_group.map_or("space group not found".to_string(), |n| format!("space group {n}"));
     let mut out = format!("{}: block {}, {} sites in the cell, {group}\n", vetted.path, vetted.block, vetted.sites);
     for warning in &vetted.warnings {
-        out += &format!("  read with a warning: {warning}\n");
+        out += &format!("  warning: {}\n", warning.one_line(&vetted.path));
     }
     if vetted.charges_assigned {
         out += "  charges are not stated in the file; the common oxidation states were assigned\n";

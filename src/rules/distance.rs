@@ -62,7 +62,7 @@ const OWN_LIMIT: &str = "share of the sum of Shannon (1976) radii; the share is 
 fn site_radius(structure: &Structure, shells: &Shells, idx: usize, terms: &Terms<'_>) -> Option<f64> {
     let coordination = u8::try_from(shells.coordination[idx].max(1)).ok()?;
     let (mut sum, mut share) = (0.0, 0.0);
-    for occupant in &structure.sites[idx].occupants {
+    for occupant in structure.sites[idx].occupants.iter() {
         let r = radius(&occupant.species.ion()?, coordination, terms.radii).ok()?;
         sum += r.angstrom * to_f64(&occupant.occupancy);
         share += to_f64(&occupant.occupancy);

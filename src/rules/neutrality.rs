@@ -38,7 +38,7 @@ pub(super) fn judge(structure: &Structure) -> Option<Finding> {
     let rounding: f64 = structure
         .sites
         .iter()
-        .flat_map(|site| &site.occupants)
+        .flat_map(|site| site.occupants.iter())
         .filter(|o| !o.occupancy.is_integer())
         .map(|o| ROUNDING * f64::from(o.species.charge.unwrap_or_default()).abs())
         .sum();
@@ -61,7 +61,7 @@ mod tests {
         let lattice = Lattice::from_basis(nalgebra::Matrix3::identity() * 4.0).unwrap();
         let shared = vec![Occupant { species: ion("Fe", 3), occupancy: iron }];
         let sites = vec![
-            Site { position: Fractional::new(0.0, 0.0, 0.0), occupants: shared },
+            Site { position: Fractional::new(0.0, 0.0, 0.0), occupants: shared.into() },
             Site::full(Fractional::new(0.5, 0.5, 0.5), ion("O", -2)),
         ];
         Structure { lattice, sites }

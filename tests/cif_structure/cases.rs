@@ -208,7 +208,7 @@ fn labels_types_and_charges() {
     let structure = read(&cif).unwrap();
     let species: Vec<String> = structure.structure.sites.iter().map(|s| s.occupants[0].species.to_string()).collect();
     assert_eq!(species, ["Fe2+", "O2-", "Cu2+"]);
-    assert_eq!(structure.labels, ["A", "A_2", "B"]);
+    assert_eq!(structure.labels.iter().collect::<Vec<_>>(), ["A", "A_2", "B"]);
     let said: Vec<_> = structure.warnings.iter().map(|w| w.message.as_str()).collect();
     for part in [
         "says +3 e, its `_atom_type_oxidation_number` +2",

@@ -113,7 +113,7 @@ fn shared_sites_stand_in_assemblies() {
             "Al" => [(al, Amount::new(7, 8)), (mg, Amount::new(1, 8))],
             _ => continue,
         };
-        site.occupants = shares.map(|(species, occupancy)| Occupant { species, occupancy }).to_vec();
+        site.occupants = shares.map(|(species, occupancy)| Occupant { species, occupancy }).into();
     }
     for explicit in [false, true] {
         let cif = write(&structure, &description(explicit)).unwrap();
@@ -135,7 +135,7 @@ fn shared_sites_stand_in_assemblies() {
 fn vacancies_and_sources_are_said() {
     let mut structure = Prototype::named("fluorite").structure();
     for site in structure.sites.iter_mut().filter(|s| s.occupants[0].species.element.symbol() == "F") {
-        site.occupants[0].occupancy = Amount::new(39, 40);
+        site.occupants = [Occupant { occupancy: Amount::new(39, 40), ..site.occupants[0] }].into();
     }
     let mut description = description(true);
     description.citations = vec![Citation {
@@ -155,7 +155,7 @@ fn vacancies_and_sources_are_said() {
 fn what_cannot_be_written_is_refused() {
     let good = Prototype::named("rocksalt").structure();
     let mut bad = good.clone();
-    bad.sites[3].occupants[0].occupancy = Amount::new(9, 8);
+    bad.sites[3].occupants = [Occupant { occupancy: Amount::new(9, 8), ..bad.sites[3].occupants[0] }].into();
     assert_eq!(
         write(&bad, &description(true)).unwrap_err().to_string(),
         "site 4 has occupancies that add up to 9/8; they must add up to more than 0 and at most 1"
@@ -164,7 +164,9 @@ fn what_cannot_be_written_is_refused() {
     bad.sites[0].position.0.x = f64::NAN;
     assert_eq!(write(&bad, &description(true)).unwrap_err(), WriteError::Coordinate { site: 1 });
     let mut bad = good.clone();
-    bad.sites[0].occupants[0].species.charge = Some(9);
+    let mut charged = bad.sites[0].occupants[0];
+    charged.species.charge = Some(9);
+    bad.sites[0].occupants = [charged].into();
     assert!(matches!(write(&bad, &description(false)).unwrap_err(), WriteError::Charge { .. }));
     let mut bad = good.clone();
     bad.sites.clear();
@@ -224,9 +226,9 @@ fn examples() -> Vec<(String, Structure)> {
     };
     for site in &mut shared.sites {
         site.occupants = match site.occupants[0].species.element.symbol() {
-            "Mg" => vec![share("Fe", Some(2), 1, 3), share("Fe", Some(3), 1, 3), share("Zn", None, 1, 3)],
-            "Al" => vec![share("Al", Some(3), 7, 8), share("Fe", Some(3), 1, 16)],
-            _ => vec![share("O", Some(-2), 123, 125)],
+            "Mg" => [share("Fe", Some(2), 1, 3), share("Fe", Some(3), 1, 3), share("Zn", None, 1, 3)].into(),
+            "Al" => [share("Al", Some(3), 7, 8), share("Fe", Some(3), 1, 16)].into(),
+            _ => [share("O", Some(-2), 123, 125)].into(),
         };
     }
     all.push(("shared".into(), shared));

@@ -5,6 +5,7 @@ use interstice::crystal::{Fractional, Lattice, Occupant, Parameters, Site, Struc
 use interstice::ion::amount;
 use interstice::ion::{Amount, Element, Ion};
 use serde_json::Value;
+use std::sync::Arc;
 
 /// One of them.
 pub struct Prototype(Value);
@@ -88,7 +89,7 @@ impl Prototype {
         let group = SpaceGroup::from_hall_number(hall as i32).unwrap();
         let mut sites = Vec::new();
         for site in self.sites() {
-            let occupants: Vec<Occupant> = site["species"].as_array().unwrap().iter().map(occupant).collect();
+            let occupants: Arc<[Occupant]> = site["species"].as_array().unwrap().iter().map(occupant).collect();
             let position = Fractional::new(number(&site["x"]), number(&site["y"]), number(&site["z"]));
             let images = orbit(&lattice, &group.operations, &position, 1e-2);
             assert_eq!(images.len() as i64, site["multiplicity"].as_i64().unwrap(), "{}", self.id());

@@ -10,6 +10,7 @@ mod contacts;
 mod expand;
 mod formula;
 mod group;
+mod labels;
 pub(super) mod operations;
 mod report;
 mod sites;
@@ -17,14 +18,15 @@ mod source;
 mod species;
 
 use super::citation::Citation;
-use super::document::{Block, Diagnostic, Document};
+use super::{Block, Diagnostic, Document};
 use crate::crystal::symmetry::Operation;
 use crate::crystal::{Lattice, Structure};
 use assemble::{Expanded, expanded};
 use formula::Amounts;
 use group::Candidate;
+pub use labels::Labels;
 use report::Report;
-use sites::Listed;
+use sites::SiteList;
 
 /// Where a symbol leaves the origin open, an origin that brings two sites nearer than this (Å) is wrong.
 const SHORTEST_CONTACT: f64 = 1.0;
@@ -47,7 +49,7 @@ pub struct ReadStructure {
     /// operations.
     pub structure: Structure,
     /// For each site of the cell the label of the listed site that it came from; of a shared site, of the first.
-    pub labels: Vec<String>,
+    pub labels: Labels,
     /// Code of the data block.
     pub block: String,
     /// Common, mineral or systematic name of the compound.
@@ -91,7 +93,7 @@ pub fn read_block(document: &Document<'_>, block: &Block<'_>) -> Result<ReadStru
         return Err(report.error("cif::sites", report.block_place(), "no listed site has a position".into()));
     }
 
-    let (operations, expanded) = choose(candidates, &lattice, &list.sites, amounts.as_ref().zip(z), &mut report)?;
+    let (operations, expanded) = choose(candidates, &lattice, &list, amounts.as_ref().zip(z), &mut report)?;
     let Expanded { structure, labels, remarks } = expanded;
     for (code, place, text) in remarks {
         report.warn(code, place, text);
@@ -114,7 +116,7 @@ pub fn read_block(document: &Document<'_>, block: &Block<'_>) -> Result<ReadStru
         z,
         citations: source::read(block),
         skipped: list.skipped,
-        warnings: report.finish(),
+        warnings: document.warnings_of(block).iter().cloned().chain(report.finish()).collect(),
     })
 }
 
@@ -123,7 +125,7 @@ pub fn read_block(document: &Document<'_>, block: &Block<'_>) -> Result<ReadStru
 fn choose(
     candidates: Vec<Candidate>,
     lattice: &Lattice,
-    sites: &[Listed],
+    list: &SiteList<'_>,
     formula: Option<(&Amounts, f64)>,
     report: &mut Report<'_, '_>,
 ) -> Result<(Vec<Operation>, Expanded), Diagnostic> {
@@ -131,7 +133,7 @@ fn choose(
     let mut first_error = None;
     let mut fallback = None;
     for candidate in candidates {
-        match expanded(lattice, &candidate.operations, sites, report) {
+        match expanded(lattice, &candidate.operations, list, report) {
             Ok(expanded) => {
                 let fits = alone || {
                     let positions = expanded.structure.positions();

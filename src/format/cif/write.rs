@@ -152,7 +152,7 @@ fn check(structure: &Structure) -> Result<(), WriteError> {
         if !positive || total <= Amount::zero() || total > Amount::one() {
             return Err(WriteError::Occupancy { site: idx + 1, total });
         }
-        for occupant in &site.occupants {
+        for occupant in site.occupants.iter() {
             if occupant.species.charge.is_some_and(|q| q.unsigned_abs() > MAX_OXIDATION) {
                 return Err(WriteError::Charge { species: occupant.species });
             }

@@ -2,101 +2,122 @@
 
 use super::contacts::Contact;
 use super::expand::{MAX_SITES, SHARE_TOLERANCE, near_pairs, orbit, wrapped};
+use super::labels::Labels;
 use super::report::Report;
-use super::sites::{Listed, MAX_SUM};
+use super::sites::{MAX_SUM, SiteList};
 use crate::crystal::symmetry::Operation;
 use crate::crystal::{Fractional, Lattice, Occupant, Site, Structure};
-use crate::format::cif::document::Diagnostic;
+use crate::format::cif::diagnostic::Diagnostic;
 use crate::ion::Amount;
 use crate::ion::amount::to_f64;
 use num_traits::One;
-use std::collections::BTreeSet;
+use std::collections::{BTreeMap, BTreeSet};
+use std::sync::Arc;
 
 /// Shifts and distances up to this (Å) are mere rounding and not worth a word.
 const QUIET_SHIFT: f64 = 2e-3;
 
-/// All sites of the cell, and remarks (code, place, text) to be made if this expansion is the one that is used.
+/// A remark to be made if this expansion is the one that is used: code, place, text.
+type Remark = (&'static str, usize, String);
+
+/// All sites of the cell, and the remarks on them.
 pub(super) struct Expanded {
     pub structure: Structure,
-    pub labels: Vec<String>,
-    pub remarks: Vec<(&'static str, usize, String)>,
+    pub labels: Labels,
+    pub remarks: Vec<Remark>,
+}
+
+/// Positions of the cell, and for each the row of the list that it is an image of.
+#[derive(Default)]
+struct Images {
+    positions: Vec<Fractional>,
+    row: Vec<u32>,
 }
 
 /// Expands the listed sites, merges those that share a position and refuses those that overlap.
 pub(super) fn expanded(
     lattice: &Lattice,
     operations: &[Operation],
-    sites: &[Listed],
+    list: &SiteList<'_>,
     report: &Report<'_, '_>,
 ) -> Result<Expanded, Diagnostic> {
     let mut remarks = Vec::new();
-    let mut positions: Vec<Fractional> = Vec::with_capacity(sites.len());
-    // For each position the listed site that it is an image of.
-    let mut origin: Vec<u32> = Vec::with_capacity(sites.len());
-    for (index, site) in sites.iter().enumerate() {
-        if operations.len() == 1 {
-            positions.push(wrapped(&site.position));
-            origin.push(index as u32);
-            continue;
-        }
-        let Some(images) = orbit(lattice, operations, &site.position) else {
+    let images = images(lattice, operations, list, &mut remarks, report)?;
+    let pairs = near_pairs(lattice, &images.positions);
+    let owner = owners(&images, list, &pairs, &mut remarks, report)?;
+    assemble(lattice, images, list, &owner, remarks, report)
+}
+
+fn images(
+    lattice: &Lattice,
+    operations: &[Operation],
+    list: &SiteList<'_>,
+    remarks: &mut Vec<Remark>,
+    report: &Report<'_, '_>,
+) -> Result<Images, Diagnostic> {
+    if operations.len() == 1 {
+        let positions = list.sites.iter().map(|site| wrapped(&site.position)).collect();
+        return Ok(Images { positions, row: (0..list.sites.len() as u32).collect() });
+    }
+    let mut images = Images::default();
+    for (row, site) in list.sites.iter().enumerate() {
+        let Some(orbit) = orbit(lattice, operations, &site.position) else {
             let text = format!(
                 "`{}` lies near a symmetry element, but not near enough to tell whether on it; give its coordinates with more digits",
                 site.label
             );
-            return Err(report.error("cif::special-position", site.place, text));
+            return Err(report.error("cif::special-position", site.place as usize, text));
         };
-        if images.shift > QUIET_SHIFT {
-            let text = format!("`{}` is moved by {:.4} Å onto its symmetry element", site.label, images.shift);
-            remarks.push(("cif::special-position", site.place, text));
+        if orbit.shift > QUIET_SHIFT {
+            let text = format!("`{}` is moved by {:.4} Å onto its symmetry element", site.label, orbit.shift);
+            remarks.push(("cif::special-position", site.place as usize, text));
         }
-        origin.resize(positions.len() + images.positions.len(), index as u32);
-        positions.extend(images.positions);
-        if positions.len() > MAX_SITES {
+        images.positions.extend(orbit.positions);
+        images.row.resize(images.positions.len(), row as u32);
+        if images.positions.len() > MAX_SITES {
             let text = format!("the cell would hold more than {MAX_SITES} sites");
-            return Err(report.error("cif::sites", site.place, text));
+            return Err(report.error("cif::sites", site.place as usize, text));
         }
     }
-    let pairs = near_pairs(lattice, &positions);
-    let owner = owners(&positions, &origin, sites, &pairs, &mut remarks, report)?;
-    assemble(lattice, &positions, &origin, sites, &owner, remarks, report)
+    Ok(images)
 }
 
-/// For each position the first position that it shares; remarks on shared and split sites; an error for sites that
-/// overlap.
+/// For each position that shares another's the first position there; remarks on shared and split sites; an error for
+/// sites that overlap.
 fn owners(
-    positions: &[Fractional],
-    origin: &[u32],
-    sites: &[Listed],
+    images: &Images,
+    list: &SiteList<'_>,
     pairs: &[Contact],
-    remarks: &mut Vec<(&'static str, usize, String)>,
+    remarks: &mut Vec<Remark>,
     report: &Report<'_, '_>,
-) -> Result<Vec<u32>, Diagnostic> {
-    let mut owner: Vec<u32> = (0..positions.len() as u32).collect();
+) -> Result<BTreeMap<usize, usize>, Diagnostic> {
+    let mut owner: BTreeMap<usize, usize> = BTreeMap::new();
     for &(i, j, distance) in pairs {
-        if distance <= SHARE_TOLERANCE && owner[j] as usize == j {
-            owner[j] = owner[i];
+        if distance <= SHARE_TOLERANCE && !owner.contains_key(&j) {
+            owner.insert(j, owner.get(&i).copied().unwrap_or(i));
         }
     }
     let most = Amount::new(MAX_SUM.0, MAX_SUM.1);
     let mut said = BTreeSet::new();
     for &(i, j, distance) in pairs {
-        let (first, second) = (&sites[origin[i] as usize], &sites[origin[j] as usize]);
-        let together = owner[i] == owner[j];
-        if !together && first.occupancy + second.occupancy > most {
+        let rows = [i, j].map(|at| images.row[at] as usize);
+        let [first, second] = rows.map(|row| &list.sites[row]);
+        let [share, other] = rows.map(|row| list.occupant(row).occupancy);
+        let together = owner.get(&i).unwrap_or(&i) == owner.get(&j).unwrap_or(&j);
+        if !together && share + other > most {
             let text = format!(
                 "`{}` and `{}` are {distance:.3} Å apart with occupancies {} and {}; no two atoms can be that near",
                 first.label,
                 second.label,
-                to_f64(&first.occupancy),
-                to_f64(&second.occupancy)
+                to_f64(&share),
+                to_f64(&other)
             );
-            return Err(report.error("cif::overlap", second.place, text));
+            return Err(report.error("cif::overlap", second.place as usize, text));
         }
-        if distance > QUIET_SHIFT && said.insert((origin[i], origin[j])) {
+        if distance > QUIET_SHIFT && said.insert(rows) {
             let how = if together { "are taken as one shared site" } else { "are taken as alternatives of one atom" };
             let text = format!("`{}` and `{}` are {distance:.3} Å apart and {how}", first.label, second.label);
-            remarks.push(("cif::shared", second.place, text));
+            remarks.push(("cif::shared", second.place as usize, text));
         }
     }
     Ok(owner)
@@ -104,68 +125,85 @@ fn owners(
 
 fn assemble(
     lattice: &Lattice,
-    positions: &[Fractional],
-    origin: &[u32],
-    sites: &[Listed],
-    owner: &[u32],
-    mut remarks: Vec<(&'static str, usize, String)>,
+    images: Images,
+    list: &SiteList<'_>,
+    owner: &BTreeMap<usize, usize>,
+    mut remarks: Vec<Remark>,
     report: &Report<'_, '_>,
 ) -> Result<Expanded, Diagnostic> {
-    // Where an owner's site stands in the list of the cell.
-    let mut at = vec![u32::MAX; positions.len()];
-    let mut cell: Vec<Site> = Vec::with_capacity(positions.len());
-    let mut labels = Vec::with_capacity(positions.len());
-    for (index, position) in positions.iter().enumerate() {
-        let site = &sites[origin[index] as usize];
-        let occupant = Occupant { species: site.species, occupancy: site.occupancy };
-        if owner[index] as usize == index {
-            at[index] = cell.len() as u32;
-            cell.push(Site { position: *position, occupants: vec![occupant] });
-            labels.push(site.label.clone());
+    // Rows that share the position of an owner, itself first.
+    let mut sharing: BTreeMap<usize, Vec<usize>> = BTreeMap::new();
+    for (&other, &first) in owner {
+        let rows = sharing.entry(first).or_insert_with(|| vec![images.row[first] as usize]);
+        rows.push(images.row[other] as usize);
+    }
+    let alone: Vec<Arc<[Occupant]>> = list.kinds.iter().map(|occupant| Arc::from([*occupant])).collect();
+    let n_sites = images.positions.len() - owner.len();
+    let mut sites = Vec::with_capacity(n_sites);
+    let mut row_of_site = Vec::with_capacity(n_sites);
+    let mut said = BTreeSet::new();
+    for (index, (position, row)) in images.positions.into_iter().zip(images.row).enumerate() {
+        if owner.contains_key(&index) {
             continue;
         }
-        let occupants = &mut cell[at[owner[index] as usize] as usize].occupants;
+        let occupants = match sharing.get(&index) {
+            None => alone[list.sites[row as usize].kind as usize].clone(),
+            Some(rows) => {
+                let remark = |remark| {
+                    if said.insert(row) {
+                        remarks.push(remark);
+                    }
+                };
+                together(rows, list, remark, report)?
+            }
+        };
+        sites.push(Site { position, occupants });
+        row_of_site.push(row);
+    }
+    let labels = Labels::new(&list.sites, row_of_site);
+    Ok(Expanded { structure: Structure { lattice: lattice.clone(), sites }, labels, remarks })
+}
+
+/// The occupants of one position that several rows share.
+fn together(
+    rows: &[usize],
+    list: &SiteList<'_>,
+    remark: impl FnOnce(Remark),
+    report: &Report<'_, '_>,
+) -> Result<Arc<[Occupant]>, Diagnostic> {
+    let mut occupants: Vec<Occupant> = Vec::new();
+    for &row in rows {
+        let occupant = list.occupant(row);
         match occupants.iter_mut().find(|o| o.species == occupant.species) {
             Some(same) => same.occupancy += occupant.occupancy,
             None => occupants.push(occupant),
         }
     }
-    let mut said = BTreeSet::new();
-    for index in (0..positions.len()).filter(|&i| owner[i] as usize == i) {
-        let site = &mut cell[at[index] as usize];
-        if site.occupants.len() == 1 && site.occupants[0].occupancy <= Amount::one() {
-            continue;
-        }
-        let total: Amount = site.occupants.iter().map(|o| o.occupancy).sum();
-        if total <= Amount::one() {
-            continue;
-        }
-        let listed = &sites[origin[index] as usize];
-        if total > Amount::new(MAX_SUM.0, MAX_SUM.1) {
-            let here = (0..positions.len()).filter(|&i| owner[i] as usize == index).map(|i| origin[i]);
-            let labels: BTreeSet<u32> = here.collect();
-            let labels: Vec<_> = labels.iter().map(|&i| format!("`{}`", sites[i as usize].label)).collect();
-            let text = format!(
-                "the occupancies of {} on one position add up to {:.4}; they must not exceed 1, and of sites that are \
-                 images of each other only one is listed",
-                labels.join(", "),
-                to_f64(&total)
-            );
-            return Err(report.error("cif::occupancy", listed.place, text));
-        }
-        // Rounding of the printed shares: the largest bears it.
-        let excess = total - Amount::one();
-        if let Some(largest) = site.occupants.iter_mut().max_by_key(|o| o.occupancy) {
+    let total: Amount = occupants.iter().map(|o| o.occupancy).sum();
+    let first = &list.sites[rows[0]];
+    if total > Amount::new(MAX_SUM.0, MAX_SUM.1) {
+        let labels: BTreeSet<usize> = rows.iter().copied().collect();
+        let labels: Vec<_> = labels.iter().map(|&row| format!("`{}`", list.sites[row].label)).collect();
+        let text = format!(
+            "the occupancies of {} on one position add up to {:.4}; they must not exceed 1, and of sites that are \
+             images of each other only one is listed",
+            labels.join(", "),
+            to_f64(&total)
+        );
+        return Err(report.error("cif::occupancy", first.place as usize, text));
+    }
+    // Rounding of the printed shares: the largest bears it.
+    let excess = total - Amount::one();
+    if excess > Amount::from(0) {
+        if let Some(largest) = occupants.iter_mut().max_by_key(|o| o.occupancy) {
             largest.occupancy -= excess;
         }
-        if said.insert(origin[index]) {
-            let text = format!(
-                "the occupancies on the position of `{}` add up to {:.4} and are taken as 1 in all",
-                listed.label,
-                to_f64(&total)
-            );
-            remarks.push(("cif::occupancy", listed.place, text));
-        }
+        let text = format!(
+            "the occupancies on the position of `{}` add up to {:.4} and are taken as 1 in all",
+            first.label,
+            to_f64(&total)
+        );
+        remark(("cif::occupancy", first.place as usize, text));
     }
-    Ok(Expanded { structure: Structure { lattice: lattice.clone(), sites: cell }, labels, remarks })
+    Ok(occupants.into())
 }

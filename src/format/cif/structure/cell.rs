@@ -2,7 +2,7 @@
 
 use super::report::Report;
 use crate::crystal::{Lattice, Parameters};
-use crate::format::cif::document::{Block, Diagnostic};
+use crate::format::cif::{Block, Diagnostic};
 
 /// Stated and computed volume may differ by this share: rounding of the parameters explains no more.
 const VOLUME_TOLERANCE: f64 = 5e-3;

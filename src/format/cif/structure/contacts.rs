@@ -24,8 +24,10 @@ pub fn contacts(lattice: &Lattice, positions: &[Fractional], radius: f64) -> Vec
         let p = positions[i as usize].0;
         // Boxes that the sphere touches, along each axis: its own and at most one on either side.
         let range = [0, 1, 2].map(|axis| {
+            // The floor of what is not below -1.
+            let floor = |x: f64| (x + 1.0) as i64 - 1;
             let n = boxes[axis] as f64;
-            (((p[axis] - reach[axis]) * n).floor() as i64, ((p[axis] + reach[axis]) * n).floor() as i64)
+            (floor((p[axis] - reach[axis]) * n), floor((p[axis] + reach[axis]) * n))
         });
         for a in range[0].0..=range[0].1 {
             for b in range[1].0..=range[1].1 {
@@ -35,8 +37,7 @@ pub fn contacts(lattice: &Lattice, positions: &[Fractional], radius: f64) -> Vec
                         if j <= i {
                             continue;
                         }
-                        let mut delta = positions[j as usize].0 - p;
-                        delta.apply(|x| *x -= x.round());
+                        let delta = (positions[j as usize].0 - p).map(nearest_image);
                         let distance = (lattice.basis() * delta).norm_squared();
                         if distance <= radius * radius {
                             found.push((i as usize, j as usize, distance.sqrt()));
@@ -50,6 +51,17 @@ pub fn contacts(lattice: &Lattice, positions: &[Fractional], radius: f64) -> Vec
     // A cell one box wide is seen from both sides.
     found.dedup_by_key(|(i, j, _)| (*i, *j));
     found
+}
+
+/// A difference of two fractions in [0, 1), brought to the nearest whole number.
+fn nearest_image(x: f64) -> f64 {
+    if x > 0.5 {
+        x - 1.0
+    } else if x < -0.5 {
+        x + 1.0
+    } else {
+        x
+    }
 }
 
 fn wrapped_box(at: [i64; 3], boxes: [usize; 3]) -> usize {

@@ -2,10 +2,10 @@
 
 use super::report::Report;
 use super::species::FormulaElements;
-use crate::crystal::Structure;
+use crate::crystal::{Occupant, Structure};
 use crate::ion::amount::to_f64;
 use crate::ion::{Amount, Element};
-use std::collections::{BTreeMap, BTreeSet};
+use std::collections::{BTreeMap, BTreeSet, HashMap};
 
 /// Amounts in the cell and in the formula times Z may differ by this share.
 const FORMULA_TOLERANCE: f64 = 0.01;
@@ -91,9 +91,16 @@ pub fn shown(amounts: &Amounts) -> String {
 
 /// Amounts of the elements in the cell.
 fn contents(structure: &Structure) -> Amounts {
+    // Sites of a kind share their occupants: those are counted first.
+    let mut alike: HashMap<*const Occupant, (&[Occupant], usize)> = HashMap::new();
+    for site in &structure.sites {
+        alike.entry(site.occupants.as_ptr()).or_insert((&site.occupants, 0)).1 += 1;
+    }
     let mut shares: BTreeMap<Element, BTreeMap<Amount, usize>> = BTreeMap::new();
-    for occupant in structure.sites.iter().flat_map(|site| &site.occupants) {
-        *shares.entry(occupant.species.element).or_default().entry(occupant.occupancy).or_insert(0) += 1;
+    for (occupants, n) in alike.into_values() {
+        for occupant in occupants {
+            *shares.entry(occupant.species.element).or_default().entry(occupant.occupancy).or_insert(0) += n;
+        }
     }
     let total = |counts: BTreeMap<Amount, usize>| counts.iter().map(|(share, n)| to_f64(share) * *n as f64).sum();
     shares.into_iter().map(|(element, counts)| (element, total(counts))).collect()

@@ -6,8 +6,8 @@ use super::operations::{Group, METRIC_TOLERANCE, close, metric_change, parse};
 use super::report::Report;
 use crate::crystal::Lattice;
 use crate::crystal::symmetry::{Operation, SpaceGroup};
-use crate::format::cif::document::{Block, Diagnostic, Value};
 use crate::format::cif::symbols;
+use crate::format::cif::{Block, Diagnostic, Value};
 use std::collections::BTreeSet;
 
 const OPERATIONS: [&str; 2] = ["_space_group_symop_operation_xyz", "_symmetry_equiv_pos_as_xyz"];
@@ -120,8 +120,8 @@ fn keeps_metric(
 /// Warns when the listed operations are not those of the symbols.
 fn check_against_symbols(
     operations: &[Operation],
-    hall: Option<&Value<'_>>,
-    symbol: Option<&Value<'_>>,
+    hall: Option<Value<'_>>,
+    symbol: Option<Value<'_>>,
     stated: &StatedGroup,
     report: &mut Report<'_, '_>,
 ) {
@@ -169,9 +169,9 @@ fn operations_of_hall(symbol: &str) -> Option<Vec<Operation>> {
 
 fn from_symbols(
     lattice: &Lattice,
-    hall: Option<&Value<'_>>,
-    symbol: Option<&Value<'_>>,
-    number: Option<&Value<'_>>,
+    hall: Option<Value<'_>>,
+    symbol: Option<Value<'_>>,
+    number: Option<Value<'_>>,
     report: &mut Report<'_, '_>,
 ) -> Result<Vec<Candidate>, Diagnostic> {
     if let Some(value) = hall {

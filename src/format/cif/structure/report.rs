@@ -1,6 +1,6 @@
 //! Warnings and errors of one data block, with their places.
 
-use crate::format::cif::document::{Diagnostic, Document, Severity};
+use crate::format::cif::{Diagnostic, Document, Severity};
 use std::collections::BTreeMap;
 
 /// Warnings of one kind that are shown in full; the rest is counted.

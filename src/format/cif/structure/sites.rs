@@ -2,11 +2,12 @@
 
 use super::report::Report;
 use super::species::{FormulaElements, Reading, of_label, of_type_symbol};
-use crate::crystal::{Cartesian, Fractional, Lattice};
-use crate::format::cif::document::{Block, Diagnostic, Loop, Value};
+use crate::crystal::{Cartesian, Fractional, Lattice, Occupant};
+use crate::format::cif::{Block, Diagnostic, Loop, Value};
 use crate::ion::{Amount, Species};
 use nalgebra::{Matrix3, Vector3};
 use num_traits::{One, Zero};
+use std::borrow::Cow;
 use std::collections::{BTreeMap, HashSet};
 
 const LABEL: [&str; 1] = ["_atom_site_label"];
@@ -20,19 +21,31 @@ pub(super) const MAX_SUM: (i128, i128) = (101, 100);
 /// Largest coordinate accepted: cells away, not garbage.
 const MAX_COORDINATE: f64 = 1e6;
 
-/// A row of the site list.
-pub(super) struct Listed {
-    pub label: String,
-    pub species: Species,
+/// Kinds that are compared one by one before the ordered index is asked.
+const FIRST_KINDS: usize = 8;
+
+/// A row of the site list. A list may have a million: its kinds are kept apart, and its labels stay in the text.
+pub(super) struct Listed<'s> {
+    pub label: Cow<'s, str>,
     pub position: Fractional,
-    pub occupancy: Amount,
-    pub place: usize,
+    /// Which of the list's kinds.
+    pub kind: u32,
+    pub place: u32,
 }
 
 /// The rows that can be used, and the labels of those that were passed over.
-pub(super) struct SiteList {
-    pub sites: Vec<Listed>,
+pub(super) struct SiteList<'s> {
+    pub sites: Vec<Listed<'s>>,
+    /// Species with their shares, each once.
+    pub kinds: Vec<Occupant>,
     pub skipped: Vec<String>,
+}
+
+impl SiteList<'_> {
+    /// What a row puts on its position.
+    pub fn occupant(&self, row: usize) -> Occupant {
+        self.kinds[self.sites[row].kind as usize]
+    }
 }
 
 /// Whether the block lists sites at all.
@@ -52,12 +65,12 @@ enum Axes {
 }
 
 /// Reads every row.
-pub(super) fn read(
-    block: &Block<'_>,
+pub(super) fn read<'s>(
+    block: &Block<'s>,
     lattice: &Lattice,
     formula: &FormulaElements,
     report: &mut Report<'_, '_>,
-) -> Result<SiteList, Diagnostic> {
+) -> Result<SiteList<'s>, Diagnostic> {
     let Some(table) = table(block) else {
         return Err(report.error("cif::sites", report.block_place(), "the block lists no atom sites".into()));
     };
@@ -71,7 +84,8 @@ pub(super) fn read(
     let calc_flag = table.column(&["_atom_site_calc_flag"]);
     let mut types = Types::new(block, formula, report);
     let mut shares = Shares::default();
-    let mut list = SiteList { sites: Vec::with_capacity(table.n_rows()), skipped: Vec::new() };
+    let mut kinds = Kinds::default();
+    let mut list = SiteList { sites: Vec::with_capacity(table.n_rows()), kinds: Vec::new(), skipped: Vec::new() };
     for row in 0..table.n_rows() {
         let head = table.value(row, label.or(type_symbol).unwrap_or(0));
         if calc_flag.is_some_and(|c| table.value(row, c).text() == "dum") {
@@ -101,11 +115,13 @@ pub(super) fn read(
         let species =
             types.species(label.map(|c| table.value(row, c)), type_symbol.map(|c| table.value(row, c)), report)?;
         let label = match label {
-            Some(_) => head.text().into_owned(),
-            None => format!("{}{}", species.element, row + 1),
+            Some(_) => head.text(),
+            None => Cow::Owned(format!("{}{}", species.element, row + 1)),
         };
-        list.sites.push(Listed { label, species, position, occupancy: share, place: head.place() });
+        let kind = kinds.of(Occupant { species, occupancy: share });
+        list.sites.push(Listed { label, position, kind, place: head.place() as u32 });
     }
+    list.kinds = kinds.all;
     rename_duplicates(&mut list.sites, report);
     Ok(list)
 }
@@ -197,6 +213,26 @@ fn position(
     })))
 }
 
+/// Species with their shares, numbered as they come.
+#[derive(Default)]
+struct Kinds {
+    all: Vec<Occupant>,
+    index: BTreeMap<(Species, Amount), u32>,
+}
+
+impl Kinds {
+    fn of(&mut self, occupant: Occupant) -> u32 {
+        // Nearly every list has few kinds.
+        if let Some(kind) = self.all.iter().take(FIRST_KINDS).position(|kind| *kind == occupant) {
+            return kind as u32;
+        }
+        *self.index.entry((occupant.species, occupant.occupancy)).or_insert_with(|| {
+            self.all.push(occupant);
+            self.all.len() as u32 - 1
+        })
+    }
+}
+
 /// Occupancies already read, by their text: a file has few different ones.
 #[derive(Default)]
 struct Shares {
@@ -204,7 +240,7 @@ struct Shares {
 }
 
 impl Shares {
-    fn read(&mut self, value: &Value<'_>, report: &mut Report<'_, '_>) -> Result<Amount, Diagnostic> {
+    fn read(&mut self, value: Value<'_>, report: &mut Report<'_, '_>) -> Result<Amount, Diagnostic> {
         let text = value.text();
         if let Some((seen, share)) = &self.last
             && *seen == text
@@ -257,8 +293,8 @@ impl<'f> Types<'f> {
 
     fn species(
         &mut self,
-        label: Option<&Value<'_>>,
-        type_symbol: Option<&Value<'_>>,
+        label: Option<Value<'_>>,
+        type_symbol: Option<Value<'_>>,
         report: &mut Report<'_, '_>,
     ) -> Result<Species, Diagnostic> {
         let stated = type_symbol.filter(|v| !v.is_unknown() && !v.is_inapplicable());
@@ -340,35 +376,35 @@ fn oxidation_numbers(block: &Block<'_>, report: &mut Report<'_, '_>) -> BTreeMap
 }
 
 /// A label that occurs again gets a suffix.
-fn rename_duplicates(sites: &mut [Listed], report: &mut Report<'_, '_>) {
+fn rename_duplicates(sites: &mut [Listed<'_>], report: &mut Report<'_, '_>) {
     if labels_ascend(sites) {
         return;
     }
-    let mut seen: HashSet<String> = HashSet::with_capacity(sites.len());
-    let mut next: BTreeMap<String, usize> = BTreeMap::new();
+    let mut seen: HashSet<Cow<'_, str>> = HashSet::with_capacity(sites.len());
+    let mut next: BTreeMap<Cow<'_, str>, usize> = BTreeMap::new();
     for site in sites {
         if seen.insert(site.label.clone()) {
             continue;
         }
         let number = next.entry(site.label.clone()).or_insert(2);
         let mut renamed = format!("{}_{number}", site.label);
-        while !seen.insert(renamed.clone()) {
+        while !seen.insert(Cow::Owned(renamed.clone())) {
             *number += 1;
             renamed = format!("{}_{number}", site.label);
         }
         *number += 1;
         report.warn(
             "cif::label",
-            site.place,
+            site.place as usize,
             format!("label `{}` stands twice; here it is called `{renamed}`", site.label),
         );
-        site.label = renamed;
+        site.label = Cow::Owned(renamed);
     }
 }
 
 /// Whether every label is letters and a number that grows with each use of the letters: then none stands twice, which
 /// spares a large file the search.
-fn labels_ascend(sites: &[Listed]) -> bool {
+fn labels_ascend(sites: &[Listed<'_>]) -> bool {
     let mut last: Vec<(&str, u64)> = Vec::new();
     sites.iter().all(|site| {
         let (letters, digits) = site.label.split_at(site.label.find(|c: char| c.is_ascii_digit()).unwrap_or(0));

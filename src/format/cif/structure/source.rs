@@ -1,7 +1,7 @@
 //! Where a structure was published, from the citation or publication items of its block.
 
 use crate::format::cif::citation::Citation;
-use crate::format::cif::document::{Block, Value};
+use crate::format::cif::{Block, Value};
 
 /// Most authors that are kept.
 const MAX_AUTHORS: usize = 100;
@@ -60,7 +60,7 @@ fn published(block: &Block<'_>) -> Option<Citation> {
 }
 
 /// Text with its lines joined; nothing for `?`, `.` and blanks.
-fn text(value: &Value<'_>) -> Option<String> {
+fn text(value: Value<'_>) -> Option<String> {
     if value.is_unknown() || value.is_inapplicable() {
         return None;
     }

@@ -1,0 +1,5 @@
+//! The syntax of CIF: verdicts, values, messages, round trips.
+
+#![allow(clippy::unwrap_used, reason = "helpers of tests")]
+
+mod conformance;
