@@ -96,7 +96,7 @@ fn fail(name: &str, reason: String) -> HostError {
 /// Which of the elements holds most of a site, if any does.
 fn role_of(site: &Site, elements: &[FrameworkElement]) -> Option<usize> {
     let mut best: Option<(usize, crate::ion::Amount)> = None;
-    for occupant in &site.occupants {
+    for occupant in site.occupants.iter() {
         let Some(r) = elements.iter().position(|(e, _)| *e == occupant.species.element) else { continue };
         if best.is_none_or(|(_, most)| occupant.occupancy > most) {
             best = Some((r, occupant.occupancy));
