@@ -25,8 +25,8 @@ fn random_dense(n: usize) -> Host {
     let mut rng = ChaCha8Rng::seed_from_u64(1);
     let mut next = || (rng.next_u64() >> 11) as f64 / (1_u64 << 53) as f64;
     let a = (n as f64 * 4.0 / 3.0 * std::f64::consts::PI / SHARE).cbrt();
-    let lattice = Lattice::from_parameters(&Parameters { a, b: a, c: a, alpha: 90.0, beta: 90.0, gamma: 90.0 })
-        .expect("a cube");
+    let lattice =
+        Lattice::from_parameters(&Parameters { a, b: a, c: a, alpha: 90.0, beta: 90.0, gamma: 90.0 }).expect("a cube");
     let mut spheres: Vec<Fractional> = (0..n).map(|_| Fractional::new(next(), next(), next())).collect();
     for _ in 0..100 {
         let list = NeighbourList::new(&lattice, &spheres, 2.0);

@@ -39,6 +39,9 @@ pub enum Error {
     /// No CIF.
     #[error(transparent)]
     CifWrite(#[from] crate::format::cif::write::WriteError),
+    /// No CIF of interstices.
+    #[error(transparent)]
+    Interstices(#[from] crate::format::interstices::InterstitialError),
     /// No plain XYZ.
     #[error(transparent)]
     Xyz(#[from] crate::format::xyz::XyzError),
@@ -115,6 +118,12 @@ pub enum Error {
         path: String,
         /// `--replace` where it may be replaced.
         remedy: &'static str,
+    },
+    /// An output file that exists.
+    #[error("`{path}` exists; choose another file, or give `--replace`")]
+    FileExists {
+        /// Path.
+        path: String,
     },
     /// Faults in a CIF.
     #[error("{report}")]

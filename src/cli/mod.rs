@@ -2,6 +2,7 @@
 
 mod build;
 mod holes;
+mod host;
 mod output;
 mod progress;
 mod radii;
@@ -25,7 +26,7 @@ struct Arguments {
 enum Command {
     /// Shannon radii, ratios and bond-valence parameters of ions
     Radii(radii::Arguments),
-    /// The interstices of a host: kind, number, size, position
+    /// The interstices of a host: kind, number, size, position, windows
     Holes(holes::Arguments),
     /// The decision alone: charges, which interstices, how many, why
     Seat(seat::Arguments),

@@ -54,6 +54,24 @@ pub fn check(folder: &Path, replace: bool) -> Result<(), Error> {
     }
 }
 
+/// Refuses a file that may not be written, before any work is done.
+pub fn check_file(path: &Path, replace: bool) -> Result<(), Error> {
+    match path.exists() && !replace {
+        true => Err(Error::FileExists { path: path.display().to_string() }),
+        false => Ok(()),
+    }
+}
+
+/// Writes a file beside `path`, then renames it into place.
+pub fn write_file(path: &Path, text: &str) -> Result<(), Error> {
+    let partial = beside(path, "partial");
+    let written = fs::write(&partial, text).and_then(|()| fs::rename(&partial, path));
+    written.map_err(|source| {
+        let _ = fs::remove_file(&partial);
+        Error::File { action: "cannot write", path: path.display().to_string(), source }
+    })
+}
+
 fn beside(folder: &Path, what: &str) -> PathBuf {
     let name = folder.file_name().map_or_else(|| "cells".into(), |n| n.to_string_lossy().into_owned());
     folder.with_file_name(format!(".{name}.{what}-{}", std::process::id()))

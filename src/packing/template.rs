@@ -23,6 +23,7 @@ use crate::crystal::symmetry::{self, SpaceGroup};
 use crate::crystal::{Fractional, Lattice, Parameters};
 use serde::Deserialize;
 use std::collections::BTreeMap;
+use std::fmt;
 use std::sync::LazyLock;
 
 /// A template that cannot be used.
@@ -67,6 +68,16 @@ pub struct Parameter {
     ideal: Number,
     minimum: f64,
     maximum: f64,
+}
+
+impl fmt::Display for Parameter {
+    fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
+        let ideal = match &self.ideal {
+            Number::Value(value) => value.to_string(),
+            Number::Text(text) => text.clone(),
+        };
+        write!(f, "{}, {} to {}, {ideal} if not given", self.meaning, self.minimum, self.maximum)
+    }
 }
 
 #[derive(Clone, Debug, Deserialize)]

@@ -2,6 +2,7 @@
 
 pub mod cells;
 pub mod holes;
+pub mod hosts;
 pub mod radii;
 pub mod seats;
 pub mod table;
