@@ -13,7 +13,7 @@ use crate::ion::composition::Composition;
 use crate::ion::{Amount, Species, formula, oxidation};
 use crate::metric::{self, Size};
 use crate::ordering::{self, Apart, Parent, Problem, Progress, Search};
-use crate::packing::{Host, Interstice, interstices};
+use crate::packing::{Host, HostError, Interstice, Sign, Templates, interstices, survey};
 use crate::recipe::{CellChoice, MAX_KEEP, Order, Pattern, Recipe};
 use crate::rules::{self, Finding, Terms};
 use crate::seating::{self, Plan, SeatRequest, Seating};
@@ -78,17 +78,20 @@ pub fn decide(recipe: &Recipe) -> Result<Decision, Error> {
     let assignment = oxidation::assign(&formula)?;
     let composition = assignment.best;
     oxidation::refuse_complex_ions(&composition)?;
-    let host = Host::parse(&recipe.packing)?;
-    let found = interstices(&host)?;
-    let requests = match &recipe.seats {
-        Some(text) => SeatRequest::parse_list(text, &composition)?,
-        None => Vec::new(),
+    let host = host(recipe)?;
+    let (requests, packed) = match &recipe.seats {
+        Some(text) => SeatRequest::parse_list(text, &composition, &host)?,
+        None => Default::default(),
     };
+    let found = places(&host, &requests)?;
     let offers = seating::offers(&host, &found);
-    let seating = seating::decide(&composition, &host.name, offers, &requests, recipe.radii)?;
+    let spheres = seating::sphere_count(&composition);
+    let (members, vacancies) = seating::members(&composition, &host, &spheres, &packed, &requests, recipe.radii)?;
+    let seating = seating::decide(&composition, &host.name, offers, &requests, (spheres, members), recipe.radii)?;
     let size = metric::fit(&composition, &seating, &seating.plans[0], recipe.radii, recipe.size)?;
     let mut cautions = assignment.cautions;
     cautions.extend(seating.spheres.assumption.clone());
+    cautions.extend(vacancies);
     cautions.extend(seating.notes.iter().cloned());
     if let [best, next, ..] = seating.plans.as_slice()
         && requests.is_empty()
@@ -97,6 +100,24 @@ pub fn decide(recipe: &Recipe) -> Result<Decision, Error> {
         cautions.push("the seats are a near tie with the next assignment; decide with `--seats`".into());
     }
     Ok(Decision { composition, cautions, host, interstices: found, seating, size })
+}
+
+/// The host that a recipe names, by its own template if it brings one.
+fn host(recipe: &Recipe) -> Result<Host, Error> {
+    let Some(template) = &recipe.template else { return Ok(Host::parse(&recipe.packing)?) };
+    let mut templates = Templates::embedded().clone();
+    templates.add("template of the recipe", &template.to_string()).map_err(HostError::from)?;
+    Ok(Host::parse_with(&recipe.packing, &templates)?)
+}
+
+/// The interstices of a host, and the saddles of those kinds that are asked for by name and are no interstices of it.
+fn places(host: &Host, requests: &[SeatRequest]) -> Result<Vec<Interstice>, Error> {
+    let mut found = interstices(host)?;
+    let lacking: Vec<_> = requests.iter().map(|r| r.kind).filter(|k| found.iter().all(|h| h.kind != *k)).collect();
+    if !lacking.is_empty() {
+        found.extend(survey(host)?.saddles.into_iter().filter(|s| lacking.contains(&s.kind)));
+    }
+    Ok(found)
 }
 
 /// Builds the cells of a recipe.
@@ -183,8 +204,12 @@ pub const MAX_UP_TO: usize = 64;
 
 /// The host with its used interstices, and what they hold per primitive cell.
 fn host_filling(decision: &Decision, plan: &Plan) -> Result<Filling, Error> {
-    let spheres = decision.host.spheres.len();
-    let per_cell = Amount::from(spheres as i128) / decision.seating.spheres.spheres;
+    let host = &decision.host;
+    let of_role = |wanted: &dyn Fn(usize) -> bool| -> Vec<Fractional> {
+        host.spheres.iter().zip(&host.role).filter(|(_, r)| wanted(**r)).map(|(p, _)| *p).collect()
+    };
+    let mut positions = of_role(&|r| host.roles[r].ion == Sign::Anion);
+    let per_cell = Amount::from(positions.len() as i128) / decision.seating.spheres.spheres;
     let mut kinds: Vec<Kind> = vec![Kind::vacancy()];
     let mut classes: Vec<Class> = Vec::new();
     let anions: Vec<(usize, Amount)> = decision
@@ -196,21 +221,23 @@ fn host_filling(decision: &Decision, plan: &Plan) -> Result<Filling, Error> {
         })
         .collect();
     classes.push(Class { name: "packing".into(), reach: 0.0, amounts: anions });
-    let mut positions = decision.host.spheres.clone();
-    let mut class = vec![0; spheres];
+    let mut class = vec![0; positions.len()];
+    for (r, role) in host.roles.iter().enumerate() {
+        let members = || decision.seating.members.iter().filter(move |m| m.role == r);
+        let Some(first) = members().next() else { continue };
+        let reach = first.distance * decision.size.scale;
+        let amounts = members().map(|m| (kind_of(&mut kinds, m.ion.into()), m.amount * per_cell)).collect();
+        let places = of_role(&|other| other == r);
+        class.extend(vec![classes.len(); places.len()]);
+        positions.extend(places);
+        classes.push(Class { name: role.name.clone(), reach, amounts });
+    }
     for (o, offer) in decision.seating.offers.iter().enumerate() {
         let amounts: Vec<(usize, Amount)> = plan
             .seats
             .iter()
             .filter(|seat| seat.offer == o)
-            .map(|seat| {
-                let species: Species = seat.ion.into();
-                let kind = kinds.iter().position(|k| k.species == Some(species)).unwrap_or_else(|| {
-                    kinds.push(Kind::of(species));
-                    kinds.len() - 1
-                });
-                (kind, seat.amount * per_cell)
-            })
+            .map(|seat| (kind_of(&mut kinds, seat.ion.into()), seat.amount * per_cell))
             .collect();
         if amounts.is_empty() {
             continue;
@@ -224,6 +251,14 @@ fn host_filling(decision: &Decision, plan: &Plan) -> Result<Filling, Error> {
     }
     let lattice = decision.host.lattice.scaled(decision.size.scale)?;
     Ok(Filling { parent: Parent { lattice, positions, class }, kinds, classes })
+}
+
+/// Index of a species among the kinds, to which it is added if new.
+fn kind_of(kinds: &mut Vec<Kind>, species: Species) -> usize {
+    kinds.iter().position(|k| k.species == Some(species)).unwrap_or_else(|| {
+        kinds.push(Kind::of(species));
+        kinds.len() - 1
+    })
 }
 
 /// The crystals to be ordered: the host itself where pattern and order are decided together, else the host with its

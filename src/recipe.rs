@@ -64,6 +64,9 @@ pub struct Recipe {
     /// Host.
     #[serde(default = "default_packing")]
     pub packing: String,
+    /// A template of the user's own by which `packing` names the host.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub template: Option<serde_json::Value>,
     /// Seats by the user's word, `Mg:tetrahedral,Al:octahedral`.
     #[serde(default, skip_serializing_if = "Option::is_none")]
     pub seats: Option<String>,
@@ -127,6 +130,7 @@ impl Recipe {
         Self {
             composition: composition.into(),
             packing: default_packing(),
+            template: None,
             seats: None,
             cell: CellChoice::default(),
             nearest: false,

@@ -1,5 +1,6 @@
 //! `interstice build`.
 
+use super::host::resolve;
 use super::{Outcome, Radii, json, output, print, progress};
 use clap::ValueEnum;
 use interstice::build::{Built, build};
@@ -18,10 +19,13 @@ pub struct Arguments {
     /// Folder for the cells; it must not exist
     #[arg(long, value_name = "DIR")]
     into: PathBuf,
-    /// The host [default: ccp]
+    /// The host, as `interstice holes` names it [default: ccp]
     #[arg(long, value_name = "HOST")]
     packing: Option<String>,
-    /// Where ions sit by your word: `Mg:tetrahedral,Al:octahedral`
+    /// Folder of further templates of hosts
+    #[arg(long, value_name = "DIR")]
+    templates: Option<String>,
+    /// Where ions sit by your word: `Mg:tetrahedral,Al:octahedral`, `Sr:A` for a sphere of the packing
     #[arg(long, value_name = "LIST")]
     seats: Option<String>,
     /// Supercell of the primitive cell, `2a,2b,2c`
@@ -151,6 +155,7 @@ fn recipe(a: &Arguments) -> Result<Recipe, Error> {
     };
     if let Some(packing) = &a.packing {
         recipe.packing.clone_from(packing);
+        recipe.template = None;
     }
     if a.seats.is_some() {
         recipe.seats.clone_from(&a.seats);
@@ -188,6 +193,7 @@ fn recipe(a: &Arguments) -> Result<Recipe, Error> {
         recipe.formats.clone_from(formats);
     }
     recipe.p1 |= a.p1;
+    resolve(&mut recipe, a.templates.as_deref())?;
     // A resolved recipe of another version is run by this one.
     recipe.version = None;
     Ok(recipe)

@@ -4,7 +4,9 @@ use interstice::error::Error;
 use interstice::format::cif::{Mode, ReadStructure, Source, parse, read_structures};
 use interstice::ion::radius::RadiusSet;
 use interstice::packing::framework::{framework, parse_elements};
+use interstice::packing::template::document;
 use interstice::packing::{Host, HostError, Templates};
+use interstice::recipe::Recipe;
 
 /// A host, and whether its spheres are ions of a real crystal.
 pub struct Named {
@@ -51,6 +53,25 @@ fn structure(path: &str) -> Result<ReadStructure, Error> {
         }
     }
 }
+
+/// Gives a recipe the template that its host needs: a framework's, or one of the user's folder.
+pub fn resolve(recipe: &mut Recipe, folder: Option<&str>) -> Result<(), Error> {
+    let templates = templates(folder)?;
+    if recipe.packing.contains('#') {
+        let host = named(&recipe.packing, &templates, recipe.radii)?.host;
+        recipe.template = Some(document(FRAMEWORK, &host));
+        recipe.packing = FRAMEWORK.into();
+        return Ok(());
+    }
+    let name = recipe.packing.split(':').next().unwrap_or_default();
+    if let (Some(template), Some(_)) = (templates.get(name), folder) {
+        recipe.template = Some(template.document().clone());
+    }
+    Ok(())
+}
+
+/// What a recipe calls the framework of a CIF.
+const FRAMEWORK: &str = "framework";
 
 /// The embedded templates and those of a folder.
 pub fn templates(folder: Option<&str>) -> Result<Templates, Error> {

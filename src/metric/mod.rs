@@ -34,8 +34,8 @@ pub struct Contact {
     pub cation: Ion,
     /// Its radius at its coordination, Å.
     pub radius: Radius,
-    /// Index of the kind of interstice in [`Seating::offers`].
-    pub offer: usize,
+    /// Index of the kind of interstice in [`Seating::offers`]; `None` for a cation of the packing.
+    pub offer: Option<usize>,
     /// Sum of the radii, Å: the distance wished.
     pub distance: f64,
     /// Packing-sphere radius at which this pair is in contact, Å.
@@ -71,7 +71,9 @@ pub fn fit(
     sizing: Sizing,
 ) -> Result<Size, RadiusError> {
     let anions: f64 = composition.anions().map(|(_, amount)| to_f64(amount)).sum();
-    let bonds: f64 = plan.seats.iter().map(|s| to_f64(&s.amount) * seating.offers[s.offer].coordination as f64).sum();
+    let seated = plan.seats.iter().map(|s| to_f64(&s.amount) * seating.offers[s.offer].coordination as f64);
+    let packed = seating.members.iter().map(|m| to_f64(&m.amount) * m.coordination as f64);
+    let bonds: f64 = seated.chain(packed).sum();
     let anion_coordination = (bonds / anions).round().max(1.0) as usize;
     let mut anion_radius = 0.0;
     for (ion, amount) in composition.anions() {
@@ -86,16 +88,28 @@ pub fn fit(
             Contact {
                 cation: seat.ion,
                 radius: seat.evidence.radius,
-                offer: seat.offer,
+                offer: Some(seat.offer),
                 distance,
                 scale: distance / offer.distance,
                 count: to_f64(&seat.amount) * offer.coordination as f64,
             }
         })
         .collect();
+    contacts.extend(seating.members.iter().map(|member| {
+        let distance = member.radius.angstrom + anion_radius;
+        Contact {
+            cation: member.ion,
+            radius: member.radius,
+            offer: None,
+            distance,
+            scale: distance / member.distance,
+            count: to_f64(&member.amount) * member.coordination as f64,
+        }
+    }));
     contacts.sort_by(|a, b| b.scale.total_cmp(&a.scale));
     // Ions that share a kind of interstice count as one of mean radius, so the tightest is taken over kinds.
-    let by_kind = (0..seating.offers.len()).filter_map(|offer| {
+    let kinds = (0..seating.offers.len()).map(Some).chain([None]);
+    let by_kind = kinds.filter_map(|offer| {
         let of_kind = || contacts.iter().filter(move |c| c.offer == offer);
         let count: f64 = of_kind().map(|c| c.count).sum();
         (count > 0.0).then(|| of_kind().map(|c| c.scale * c.count).sum::<f64>() / count)

@@ -25,7 +25,7 @@ pub fn polytypes(n: usize) -> Result<impl Iterator<Item = Stacking>, StackingErr
             let mut place = 0;
             let layer = |i: usize| {
                 let here = place;
-                place = (place + if word >> i & 1 == 0 { 1 } else { 2 }) % 3;
+                place = (place + if word >> (n - 1 - i) & 1 == 0 { 1 } else { 2 }) % 3;
                 here
             };
             Stacking::new((0..n).map(layer).collect())

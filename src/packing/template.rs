@@ -22,6 +22,7 @@ use super::host::{Host, HostError, Role, Sign};
 use crate::crystal::symmetry::{self, SpaceGroup};
 use crate::crystal::{Fractional, Lattice, Parameters};
 use serde::Deserialize;
+use serde_json::{Value, json};
 use std::collections::BTreeMap;
 use std::fmt;
 use std::sync::LazyLock;
@@ -56,6 +57,8 @@ pub struct Template {
     spheres: Vec<Sphere>,
     #[serde(skip)]
     file: String,
+    #[serde(skip)]
+    document: Value,
 }
 
 /// A free parameter.
@@ -177,6 +180,7 @@ impl Templates {
             .map_err(|e| fail(&e.path().to_string(), e.inner().to_string()))?;
         json.end().map_err(|e| fail("end", e.to_string()))?;
         template.file = file.into();
+        template.document = serde_json::from_str(text).unwrap_or_default();
         let word = |c: char| c.is_ascii_alphanumeric() || c == '-';
         let reserved = super::host::NAMED.contains(&template.name.as_str())
             || ["stack", "layers", "ax3"].contains(&template.name.as_str());
@@ -211,7 +215,29 @@ struct Layout {
     roles: Vec<Role>,
 }
 
+/// A host written as a template of this name, in P 1: what [`Templates::add`] makes the same host of.
+pub fn document(name: &str, host: &Host) -> Value {
+    let Parameters { a, b, c, alpha, beta, gamma } = host.lattice.parameters();
+    let roles = host.roles.iter().map(|r| json!({ "name": r.name, "ion": r.ion, "radius": r.radius }));
+    let spheres = host.spheres.iter().zip(&host.role);
+    let spheres = spheres.map(|(p, r)| json!({ "role": host.roles[*r].name, "at": [p.0.x, p.0.y, p.0.z] }));
+    json!({
+        "name": name,
+        "title": host.name,
+        "source": format!("spheres of {}", host.name),
+        "hall_symbol": "P 1",
+        "cell": { "a": a, "b": b, "c": c, "alpha": alpha, "beta": beta, "gamma": gamma },
+        "roles": roles.collect::<Vec<_>>(),
+        "spheres": spheres.collect::<Vec<_>>(),
+    })
+}
+
 impl Template {
+    /// The template as it stands in its file.
+    pub fn document(&self) -> &Value {
+        &self.document
+    }
+
     /// Its free parameters by name.
     pub fn parameters(&self) -> &BTreeMap<String, Parameter> {
         &self.parameters

@@ -175,11 +175,11 @@ fn findings(findings: &[Finding]) -> String {
 pub fn notes(built: &Built, cell: &Cell) -> Vec<String> {
     let decision = &built.decision;
     let plan = &decision.seating.plans[0];
-    let seats: Vec<String> = plan
-        .seats
-        .iter()
-        .map(|s| format!("{} {} in {}", s.amount, s.ion, decision.seating.offers[s.offer].kind))
-        .collect();
+    let packed = decision.seating.members.iter();
+    let packed = packed.map(|m| format!("{} {} as {}", m.amount, m.ion, decision.host.roles[m.role].name));
+    let seated = plan.seats.iter();
+    let seated = seated.map(|s| format!("{} {} in {}", s.amount, s.ion, decision.seating.offers[s.offer].kind));
+    let seats: Vec<String> = packed.chain(seated).collect();
     let mut notes = vec![
         format!(
             "Composition {}; packing {}; seats per formula unit: {}.",

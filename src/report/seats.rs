@@ -51,6 +51,21 @@ pub struct PlanRow {
     pub seats: Vec<SeatRow>,
 }
 
+/// A cation that belongs to the packing.
+#[derive(Debug, Serialize)]
+pub struct PackedRow {
+    /// Ion.
+    pub ion: String,
+    /// Name of its sphere in the host.
+    pub sphere: String,
+    /// Anions around it.
+    pub coordination: usize,
+    /// Ions per formula unit, exact.
+    pub amount: String,
+    /// Radius at this coordination, Å; `~` interpolated, `?` of another coordination.
+    pub radius: String,
+}
+
 /// The whole decision.
 #[derive(Debug, Serialize)]
 pub struct Seats {
@@ -66,6 +81,9 @@ pub struct Seats {
     pub anion_radius: f64,
     /// Radius of the packing sphere, Å, by contact, for the first assignment.
     pub sphere_radius: f64,
+    /// Cations that belong to the packing.
+    #[serde(skip_serializing_if = "Vec::is_empty")]
+    pub packed: Vec<PackedRow>,
     /// Assignments, best first.
     pub assignments: Vec<PlanRow>,
     /// Doubts.
@@ -82,6 +100,17 @@ pub fn gather(decision: &Decision) -> Seats {
         vacant: seating.spheres.vacant.to_string(),
         anion_radius: seating.anion_radius,
         sphere_radius: decision.size.scale,
+        packed: seating
+            .members
+            .iter()
+            .map(|m| PackedRow {
+                ion: m.ion.to_string(),
+                sphere: decision.host.roles[m.role].name.clone(),
+                coordination: m.coordination,
+                amount: m.amount.to_string(),
+                radius: m.radius.to_string(),
+            })
+            .collect(),
         assignments: seating.plans.iter().take(LISTED).enumerate().map(|(i, p)| plan_row(seating, p, i + 1)).collect(),
         cautions: decision.cautions.clone(),
     }
@@ -125,6 +154,12 @@ pub fn text(seats: &Seats, size: &Size) -> String {
     let mut out =
         format!("{}  in {}, {} packing spheres per formula unit", seats.composition, seats.host, seats.spheres);
     out += &if seats.vacant == "0" { "\n".to_string() } else { format!(", {} of them vacant\n", seats.vacant) };
+    for m in &seats.packed {
+        out += &format!(
+            "in the packing: {} {} as {}, {} anions around it; r {} Å\n",
+            m.amount, m.ion, m.sphere, m.coordination, m.radius
+        );
+    }
     for plan in &seats.assignments {
         let fills: Vec<String> = plan.fills.iter().map(|(kind, fill)| format!("{fill} of the {kind}")).collect();
         let rule2 = plan.rule2_deviation.map_or("not weighed".into(), |d| format!("{d:.3} v.u."));

@@ -5,6 +5,7 @@
 //! stands above all of it. Does not say which of the equal interstices is taken: `ordering` does.
 
 mod evidence;
+mod member;
 mod offer;
 mod plan;
 mod request;
@@ -12,9 +13,10 @@ mod rule2;
 mod spheres;
 
 pub use evidence::{Evidence, Fit};
+pub use member::{Member, members};
 pub use offer::{Offer, Rung, ladder, offers};
 pub use plan::{NEAR_TIE, Plan, Seat, Seating, decide};
-pub use request::SeatRequest;
+pub use request::{MemberRequest, SeatRequest};
 pub use spheres::{SphereCount, sphere_count};
 
 use crate::ion::Amount;
@@ -30,6 +32,14 @@ pub enum SeatingError {
         composition: String,
         /// `cation` or `anion`.
         missing: &'static str,
+    },
+    /// A packing of cations alone.
+    #[error(
+        "all spheres of `{host}` are cations; seats between them are not decided here, `interstice holes {host}` shows its interstices; take a packing of anions"
+    )]
+    CationHost {
+        /// The host's name.
+        host: String,
     },
     /// The packing cannot hold that many cations.
     #[error(

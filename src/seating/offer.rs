@@ -1,7 +1,7 @@
 //! What a host offers: its interstices gathered by kind, with the range of radius ratio that each suits.
 
 use crate::ion::Amount;
-use crate::packing::{Host, Interstice, Kind, interstices};
+use crate::packing::{Class, Host, Interstice, Kind, Sign, interstices};
 use std::sync::LazyLock;
 
 /// Two interstices of one kind are the same offer when their ratios differ by less than this.
@@ -21,9 +21,11 @@ pub struct Offer {
     pub ratio: f64,
     /// Critical ratio of the next larger kind of interstice in any named packing; infinite if there is none.
     pub next_ratio: f64,
-    /// Interstices per packing sphere.
+    /// Enclosed on all sides, or a saddle, which is taken by the user's word only.
+    pub class: Class,
+    /// Interstices per anion of the packing.
     pub per_sphere: Amount,
-    /// Distance from the centre to its spheres, in radii of the packing sphere.
+    /// Mean distance from the centre to its spheres, in radii of the packing sphere.
     pub distance: f64,
     /// Indices into the list of interstices of the host's primitive cell.
     pub interstices: Vec<usize>,
@@ -68,11 +70,14 @@ pub fn ladder() -> &'static [Rung] {
     &LADDER
 }
 
-/// The interstices of a host gathered by kind, smallest ratio first.
+/// The interstices of a host gathered by kind, smallest ratio first. Those that touch a sphere for cations are left out:
+/// no cation is put beside one.
 pub fn offers(host: &Host, found: &[Interstice]) -> Vec<Offer> {
+    let is_anion = |sphere: usize| host.roles[host.role[sphere]].ion == Sign::Anion;
     let mut offers: Vec<Offer> = Vec::new();
-    for (idx, hole) in found.iter().enumerate() {
-        let same = |o: &&mut Offer| o.kind == hole.kind && (o.ratio - hole.ratio).abs() < SAME_RATIO;
+    for (idx, hole) in found.iter().enumerate().filter(|(_, h)| h.shell.iter().all(|c| is_anion(c.sphere))) {
+        let same =
+            |o: &&mut Offer| (o.kind, o.class) == (hole.kind, hole.class) && (o.ratio - hole.ratio).abs() < SAME_RATIO;
         if let Some(offer) = offers.iter_mut().find(same) {
             offer.interstices.push(idx);
             continue;
@@ -84,14 +89,24 @@ pub fn offers(host: &Host, found: &[Interstice]) -> Vec<Offer> {
             coordination,
             ratio: hole.ratio,
             next_ratio: ladder().iter().find(larger).map_or(f64::INFINITY, |rung| rung.ratio),
+            class: hole.class,
             per_sphere: Amount::from(0),
-            distance: 1.0 + hole.ratio,
+            distance: distance(hole),
             interstices: vec![idx],
         });
     }
+    let anions = (0..host.spheres.len()).filter(|i| is_anion(*i)).count().max(1);
     for offer in &mut offers {
-        offer.per_sphere = Amount::new(offer.interstices.len() as i128, host.spheres.len() as i128);
+        offer.per_sphere = Amount::new(offer.interstices.len() as i128, anions as i128);
     }
     offers.sort_by(|a, b| a.ratio.total_cmp(&b.ratio));
     offers
+}
+
+/// The spheres of an enclosed interstice are equally near; those of a saddle are not.
+fn distance(hole: &Interstice) -> f64 {
+    match hole.class {
+        Class::Vertex => 1.0 + hole.ratio,
+        _ => hole.shell.iter().map(|c| c.distance).sum::<f64>() / hole.shell.len() as f64,
+    }
 }

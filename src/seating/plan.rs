@@ -3,12 +3,13 @@
 use super::evidence::{Evidence, Fit, MeanAnion, weigh};
 use super::offer::{Offer, ladder};
 use super::rule2::{Group, least_deviation};
-use super::spheres::{SphereCount, sphere_count};
-use super::{SeatRequest, SeatingError};
+use super::spheres::SphereCount;
+use super::{Member, SeatRequest, SeatingError};
 use crate::ion::amount::to_f64;
 use crate::ion::composition::Composition;
 use crate::ion::radius::{RadiusSet, radius};
 use crate::ion::{Amount, Element, Ion};
+use crate::packing::Class;
 use itertools::Itertools;
 use num_traits::Zero;
 
@@ -43,7 +44,9 @@ pub struct Plan {
 pub struct Seating {
     /// Kinds of interstice of the host, smallest ratio first.
     pub offers: Vec<Offer>,
-    /// Packing spheres per formula unit.
+    /// Cations that belong to the packing.
+    pub members: Vec<Member>,
+    /// Spheres for anions per formula unit.
     pub spheres: SphereCount,
     /// Mean radius of the packed anions at coordination 6, Å, by which ratios are formed.
     pub anion_radius: f64,
@@ -62,7 +65,8 @@ pub const MAX_PLANS: usize = 20_000;
 /// Two plans are told as a near tie when their penalties differ by less than this.
 pub const NEAR_TIE: f64 = 0.2;
 
-/// Decides the seats of a composition in a host with these offers, honouring `requests`.
+/// Decides the seats of a composition in a host with these offers, so many spheres and these cations in the packing,
+/// honouring `requests`.
 ///
 /// # Errors
 /// [`SeatingError`]: no cation or anion, too few interstices, an untabulated radius, too many assignments.
@@ -71,6 +75,7 @@ pub fn decide(
     host_name: &str,
     offers: Vec<Offer>,
     requests: &[SeatRequest],
+    (spheres, members): (SphereCount, Vec<Member>),
     set: RadiusSet,
 ) -> Result<Seating, SeatingError> {
     for (missing, empty) in
@@ -80,9 +85,13 @@ pub fn decide(
             return Err(SeatingError::OneSided { composition: composition.to_string(), missing });
         }
     }
-    let spheres = sphere_count(composition);
     let anion = mean_anion(composition, set)?;
-    let cations: Vec<(Ion, Amount)> = composition.cations().map(|(ion, amount)| (*ion, *amount)).collect();
+    let in_packing = |ion: &Ion| members.iter().filter(|m| m.ion == *ion).map(|m| m.amount).sum::<Amount>();
+    let cations: Vec<(Ion, Amount)> = composition
+        .cations()
+        .map(|(ion, amount)| (*ion, amount - in_packing(ion)))
+        .filter(|(_, amount)| *amount > Amount::zero())
+        .collect();
     check_requests(requests, &offers, host_name)?;
 
     // The evidence of every ion in every kind; weighed once, used by all plans.
@@ -105,7 +114,7 @@ pub fn decide(
     }
     plans.sort_by(|a, b| a.penalty.total_cmp(&b.penalty));
     let notes = unmet_wishes(&cations, &offers, &evidence, anion, set);
-    Ok(Seating { offers, spheres, anion_radius: anion.radius, plans, notes })
+    Ok(Seating { offers, members, spheres, anion_radius: anion.radius, plans, notes })
 }
 
 fn mean_anion(composition: &Composition, set: RadiusSet) -> Result<MeanAnion, SeatingError> {
@@ -201,7 +210,7 @@ fn rows_of(
     Ok(match rest_in {
         Some(o) => vec![with(o)],
         None if rest.is_zero() => vec![fixed],
-        None => (0..offers.len()).map(with).collect(),
+        None => (0..offers.len()).filter(|o| offers[*o].class == Class::Vertex).map(with).collect(),
     })
 }
 
@@ -257,7 +266,9 @@ fn weigh_plan(
     }
     let rule2_deviation = least_deviation(&groups(&bonds));
     let fills = (0..offers.len()).map(|o| amounts.iter().map(|row| row[o]).sum::<Amount>() / available[o]).collect();
-    Plan { seats, fills, rule2_deviation, penalty: penalty / total + RULE2_WEIGHT * rule2_deviation.unwrap_or(0.0) }
+    // All cations may belong to the packing.
+    let mean = if total > 0.0 { penalty / total } else { 0.0 };
+    Plan { seats, fills, rule2_deviation, penalty: mean + RULE2_WEIGHT * rule2_deviation.unwrap_or(0.0) }
 }
 
 /// Cations by bond strength as the anions meet them. Ions of one element in one kind of interstice count with their mean

@@ -4,7 +4,7 @@ use super::SeatingError;
 use crate::ion::amount;
 use crate::ion::composition::Composition;
 use crate::ion::{Amount, Ion, formula};
-use crate::packing::Kind;
+use crate::packing::{Host, Kind, Sign};
 
 /// An ion sent to a kind of interstice, wholly or in a stated amount.
 #[derive(Clone, Debug, PartialEq)]
@@ -17,15 +17,30 @@ pub struct SeatRequest {
     pub amount: Option<Amount>,
 }
 
+/// An ion sent to a role of the packing, wholly or in a stated amount.
+#[derive(Clone, Debug, PartialEq)]
+pub struct MemberRequest {
+    /// Which ion.
+    pub ion: Ion,
+    /// Index of the role in the host.
+    pub role: usize,
+    /// Ions per formula unit; all of them if `None`.
+    pub amount: Option<Amount>,
+}
+
 impl SeatRequest {
-    /// Reads `Mg:tetrahedral,Al:octahedral` or `Fe(III):tetrahedral=1,Fe(III):octahedral`; an element without a charge
-    /// stands for all its ions in the composition.
+    /// Reads `Mg:tetrahedral,Al:octahedral`, `Fe(III):tetrahedral=1,Fe(III):octahedral` or `Sr:A`, where A is a sphere of
+    /// the host that stands for cations; an element without a charge stands for all its ions in the composition.
     ///
     /// # Errors
     /// [`SeatingError::Request`] that names the entry and what is wrong with it.
-    pub fn parse_list(text: &str, composition: &Composition) -> Result<Vec<Self>, SeatingError> {
+    pub fn parse_list(
+        text: &str,
+        composition: &Composition,
+        host: &Host,
+    ) -> Result<(Vec<Self>, Vec<MemberRequest>), SeatingError> {
         let fail = |reason: String| SeatingError::Request { text: text.into(), reason };
-        let mut requests = Vec::new();
+        let (mut requests, mut members) = (Vec::new(), Vec::new());
         for entry in split_outside_parentheses(text) {
             let entry = entry.trim();
             let (ion_text, rest) =
@@ -38,15 +53,22 @@ impl SeatRequest {
                     (kind.trim(), Some(value))
                 }
             };
-            let kind =
-                Kind::parse(kind_text).ok_or_else(|| fail(format!("`{kind_text}` is not a kind of interstice")))?;
+            let role = host.roles.iter().position(|role| role.ion == Sign::Cation && role.name == kind_text);
+            let kind = Kind::parse(kind_text);
+            if kind.is_none() && role.is_none() {
+                return Err(fail(format!("`{kind_text}` is not a kind of interstice")));
+            }
             let ions = ions_named(ion_text.trim(), composition);
             if ions.is_empty() {
                 return Err(fail(format!("`{}` is no cation of `{composition}`", ion_text.trim())));
             }
-            requests.extend(ions.into_iter().map(|ion| Self { ion, kind, amount }));
+            match (role, kind) {
+                (Some(role), _) => members.extend(ions.into_iter().map(|ion| MemberRequest { ion, role, amount })),
+                (None, Some(kind)) => requests.extend(ions.into_iter().map(|ion| Self { ion, kind, amount })),
+                (None, None) => {}
+            }
         }
-        Ok(requests)
+        Ok((requests, members))
     }
 }
 
