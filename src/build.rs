@@ -246,7 +246,7 @@ fn host_filling(decision: &Decision, plan: &Plan) -> Result<Filling, Error> {
             positions.push(decision.interstices[hole].position);
             class.push(classes.len());
         }
-        let reach = offer.distance * decision.size.scale;
+        let reach = offer.reach * decision.size.scale;
         classes.push(Class { name: offer.kind.to_string(), reach, amounts });
     }
     let lattice = decision.host.lattice.scaled(decision.size.scale)?;

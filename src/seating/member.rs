@@ -71,7 +71,7 @@ pub fn members(
                 |ion: &Ion| seats.iter().all(|r| r.ion != *ion) && members.iter().all(|m: &Member| m.ion != *ion);
             largest(composition, place, free, set)
         } else {
-            of_role.iter().map(|r| (r.ion, r.amount.unwrap_or_else(|| composition.amount_of(&r.ion)))).collect()
+            of_role.iter().map(|r| (r.ion, r.amount.unwrap_or_else(|| rest(composition, r, requests, seats)))).collect()
         };
         let name = &host.roles[place.role].name;
         let total: Amount = taken.iter().map(|(_, amount)| *amount).sum();
@@ -97,6 +97,14 @@ pub fn members(
         }
     }
     Ok((members, notes))
+}
+
+/// What other requests leave of an ion.
+fn rest(composition: &Composition, of: &MemberRequest, requests: &[MemberRequest], seats: &[SeatRequest]) -> Amount {
+    let members = requests.iter().filter(|r| r.ion == of.ion).filter_map(|r| r.amount);
+    let seated = seats.iter().filter(|r| r.ion == of.ion).filter_map(|r| r.amount);
+    let rest = composition.amount_of(&of.ion) - members.chain(seated).sum::<Amount>();
+    rest.max(Amount::zero())
 }
 
 fn places(host: &Host, spheres: &SphereCount) -> Result<Vec<Place>, SeatingError> {

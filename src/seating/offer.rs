@@ -27,6 +27,8 @@ pub struct Offer {
     pub per_sphere: Amount,
     /// Mean distance from the centre to its spheres, in radii of the packing sphere.
     pub distance: f64,
+    /// Distance to the farthest of them, in the same unit.
+    pub reach: f64,
     /// Indices into the list of interstices of the host's primitive cell.
     pub interstices: Vec<usize>,
 }
@@ -92,6 +94,7 @@ pub fn offers(host: &Host, found: &[Interstice]) -> Vec<Offer> {
             class: hole.class,
             per_sphere: Amount::from(0),
             distance: distance(hole),
+            reach: hole.shell.iter().map(|c| c.distance).fold(1.0 + hole.ratio, f64::max),
             interstices: vec![idx],
         });
     }
@@ -103,10 +106,11 @@ pub fn offers(host: &Host, found: &[Interstice]) -> Vec<Offer> {
     offers
 }
 
-/// The spheres of an enclosed interstice are equally near; those of a saddle are not.
+/// Mean distance of the spheres; that of the nearest where all are equally near.
 fn distance(hole: &Interstice) -> f64 {
-    match hole.class {
-        Class::Vertex => 1.0 + hole.ratio,
-        _ => hole.shell.iter().map(|c| c.distance).sum::<f64>() / hole.shell.len() as f64,
+    let nearest = 1.0 + hole.ratio;
+    if hole.shell.iter().all(|c| c.distance - nearest < SAME_RATIO) {
+        return nearest;
     }
+    hole.shell.iter().map(|c| c.distance).sum::<f64>() / hole.shell.len() as f64
 }

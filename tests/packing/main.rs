@@ -2,7 +2,9 @@
 
 #![allow(clippy::unwrap_used, reason = "a failed test may panic")]
 
+mod command;
 mod frameworks;
 mod ideal;
+mod jobs;
 mod made;
 mod robust;
