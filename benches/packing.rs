@@ -43,11 +43,21 @@ fn random_dense(n: usize) -> Host {
     Host { name: format!("{n} random spheres"), lattice, spheres, role, roles, stacking: None, scale: None }
 }
 
+/// The spheres as fractions of the cube, for `qhull.py`.
+fn write_down(host: &Host) {
+    let points: Vec<[f64; 3]> = host.spheres.iter().map(|p| p.0.into()).collect();
+    let document = serde_json::json!({ "edge": host.lattice.parameters().a, "points": points });
+    std::fs::write(concat!(env!("CARGO_TARGET_TMPDIR"), "/random-10000.json"), document.to_string()).expect("a file");
+}
+
 fn random(c: &mut Criterion) {
     let mut group = c.benchmark_group("holes of random dense packings");
     group.sample_size(10);
     for n in [2_500, 5_000, 10_000, 20_000] {
         let host = random_dense(n);
+        if n == 10_000 {
+            write_down(&host);
+        }
         for threads in [1, 2] {
             let pool = rayon::ThreadPoolBuilder::new().num_threads(threads).build().expect("threads");
             group.bench_function(format!("{n} spheres, {threads} cores"), |b| {

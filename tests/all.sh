@@ -28,6 +28,7 @@ for case in "MgO ccp" "ZnS hcp" "CaF2 primitive-cubic" "CdI2 hcp" "FeS hcp" "Li2
 done
 if bash tests/readers/install.sh; then
     target/readers/bin/python tests/readers/check.py "$interstice" target/samples/*/*.cif target/tmp/readers/*.cif
+    target/readers/bin/python tests/readers/packing.py target/tmp/diagrams target/tmp/holes-dummies
 elif [ "${CI:-}" = true ]; then
     exit 1
 fi

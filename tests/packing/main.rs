@@ -7,4 +7,5 @@ mod frameworks;
 mod ideal;
 mod jobs;
 mod made;
+mod outside;
 mod robust;
