@@ -27,11 +27,26 @@ pub struct NeighbourList<'a> {
     lattice: &'a Lattice,
     positions: &'a [Fractional],
     boxes: [usize; 3],
-    /// Positions (index, reduced coordinates, cell shift of the reduction) sorted by box.
-    sorted: Vec<(usize, Vector3<f64>, [i32; 3])>,
+    /// Positions sorted by box.
+    sorted: Vec<Sorted>,
     /// Start of each box in `sorted`, one more at the end.
     starts: Vec<usize>,
 }
+
+/// A position in its box.
+#[derive(Clone, Copy)]
+struct Sorted {
+    index: usize,
+    /// Coordinates in [0, 1).
+    reduced: Vector3<f64>,
+    /// The same on orthogonal axes.
+    cartesian: Vector3<f64>,
+    /// Cell from which the position was brought there.
+    shift: [i32; 3],
+}
+
+/// Share by which the quick test of a distance lets more pass than the exact one.
+const ROUNDING: f64 = 1e-9;
 
 impl<'a> NeighbourList<'a> {
     /// Sorts the positions for queries of about `radius` (Å); other radii work too, less quickly.
@@ -58,10 +73,11 @@ impl<'a> NeighbourList<'a> {
             starts[i + 1] += starts[i];
         }
         let mut next = starts.clone();
-        let mut sorted = vec![(0, Vector3::zeros(), [0; 3]); positions.len()];
-        for (index, (r, shift)) in reduced.into_iter().enumerate() {
-            let slot = &mut next[box_of(&r)];
-            sorted[*slot] = (index, r, shift);
+        let nowhere = Sorted { index: 0, reduced: Vector3::zeros(), cartesian: Vector3::zeros(), shift: [0; 3] };
+        let mut sorted = vec![nowhere; positions.len()];
+        for (index, (reduced, shift)) in reduced.into_iter().enumerate() {
+            let slot = &mut next[box_of(&reduced)];
+            sorted[*slot] = Sorted { index, reduced, cartesian: lattice.basis() * reduced, shift };
             *slot += 1;
         }
         Self { lattice, positions, boxes, sorted, starts }
@@ -80,20 +96,30 @@ impl<'a> NeighbourList<'a> {
             let reach = radius / spacings[axis];
             (((home.0[axis] - reach) * n).floor() as i64, ((home.0[axis] + reach) * n).floor() as i64)
         });
-        for i in range[0].0..=range[0].1 {
-            for j in range[1].0..=range[1].1 {
-                for k in range[2].0..=range[2].1 {
-                    let at = [i, j, k];
-                    let cell = [0, 1, 2].map(|axis| at[axis].div_euclid(self.boxes[axis] as i64) as i32);
-                    let local = [0, 1, 2].map(|axis| at[axis].rem_euclid(self.boxes[axis] as i64) as usize);
-                    let idx = (local[0] * self.boxes[1] + local[1]) * self.boxes[2] + local[2];
-                    for (index, r, shift) in &self.sorted[self.starts[idx]..self.starts[idx + 1]] {
-                        let cell_vector = Vector3::new(f64::from(cell[0]), f64::from(cell[1]), f64::from(cell[2]));
-                        let vector = self.lattice.basis() * (r + cell_vector - home.0);
+        // Each box of a range as the cell it lies in and its number there.
+        let on = |axis: usize, at: i64| {
+            let n = self.boxes[axis] as i64;
+            (at.div_euclid(n) as i32, at.rem_euclid(n) as usize)
+        };
+        let basis = self.lattice.basis();
+        let origin = basis * home.0;
+        let most = radius * radius + ROUNDING * (radius * radius + basis.norm_squared());
+        for (x, i) in (range[0].0..=range[0].1).map(|at| on(0, at)) {
+            for (y, j) in (range[1].0..=range[1].1).map(|at| on(1, at)) {
+                for (z, k) in (range[2].0..=range[2].1).map(|at| on(2, at)) {
+                    let idx = (i * self.boxes[1] + j) * self.boxes[2] + k;
+                    let inside = &self.sorted[self.starts[idx]..self.starts[idx + 1]];
+                    if inside.is_empty() {
+                        continue;
+                    }
+                    let cell = Vector3::new(f64::from(x), f64::from(y), f64::from(z));
+                    let offset = basis * cell - origin;
+                    for p in inside.iter().filter(|p| (p.cartesian + offset).norm_squared() <= most) {
+                        let vector = basis * (p.reduced + cell - home.0);
                         let distance = vector.norm();
                         if distance <= radius {
-                            let image = [0, 1, 2].map(|axis| cell[axis] - shift[axis] + home_shift[axis]);
-                            found.push(Neighbour { index: *index, image, vector, distance });
+                            let image = [0, 1, 2].map(|axis| [x, y, z][axis] - p.shift[axis] + home_shift[axis]);
+                            found.push(Neighbour { index: p.index, image, vector, distance });
                         }
                     }
                 }

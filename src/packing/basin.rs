@@ -14,6 +14,7 @@ use super::touching;
 use crate::crystal::neighbours::{Neighbour, NeighbourList};
 use crate::crystal::{Cartesian, Fractional};
 use nalgebra::Vector3;
+use rayon::prelude::*;
 
 /// A hole's least depth over the passages out of it, in radii of the packing sphere. Half of hcp's tetrahedra over the
 /// triangle that a pair shares is 0.035; displacing spheres by 1 % of their distance makes steps of 0.02.
@@ -63,13 +64,12 @@ pub fn basins(spheres: &Spheres<'_>, diagram: &Diagram) -> Basins {
         let (root, cell) = joining.root(v);
         members[root].push((v, cell));
     }
+    let roots: Vec<usize> = (0..n).filter(|v| !members[*v].is_empty()).collect();
     // Place of each root's basin in the list, and the cell of the root's frame relative to the hole's centre.
-    let mut found: Vec<(Hole, [i32; 3])> = Vec::new();
     let mut of_root = vec![usize::MAX; n];
-    for root in (0..n).filter(|v| !members[*v].is_empty()) {
-        of_root[root] = found.len();
-        found.push(settled(spheres, diagram, peak[root], &members[root]));
-    }
+    roots.iter().enumerate().for_each(|(place, root)| of_root[*root] = place);
+    let found: Vec<(Hole, [i32; 3])> =
+        roots.into_par_iter().map(|root| settled(spheres, diagram, peak[root], &members[root])).collect();
     let (holes, same_as) = distinct(spheres, found.iter().map(|(hole, _)| hole));
     let of_vertex = (0..n)
         .map(|v| {
@@ -89,7 +89,7 @@ fn gathered(diagram: &Diagram) -> (Joining, Vec<usize>) {
     let clearance = |v: usize| diagram.vertices[v].clearance;
     let mut order: Vec<(i64, usize)> =
         diagram.edges.iter().enumerate().map(|(i, e)| (-(e.bottleneck * GRID).round() as i64, i)).collect();
-    order.sort_unstable();
+    order.par_sort_unstable();
     let mut joining = Joining::new(n);
     let mut peak: Vec<usize> = (0..n).collect();
     for (_, i) in order {
@@ -141,10 +141,10 @@ fn centred(spheres: &Spheres<'_>, start: Vector3<f64>, top: f64) -> Option<(Vect
     let mut before: Vec<(usize, [i32; 3])> = Vec::new();
     for _ in 0..ROUNDS {
         let point = spheres.lattice.fractional(&Cartesian(at));
-        let shell = shell::around(spheres, &point, 4);
+        let (shell, clearance) = shell::expected(spheres, &point, 4, top);
         let members: Vec<_> = shell.iter().map(|n| (n.index, n.image)).collect();
         if members == before {
-            return (spheres.clearance(&point) > top - LOSS).then_some((at, shell));
+            return (clearance > top - LOSS).then_some((at, shell));
         }
         let touched: Vec<touching::Sphere> = shell.iter().map(|n| (n.vector, spheres.radii[n.index])).collect();
         at += touching::centre(&touched).0;

@@ -5,8 +5,8 @@
 //! the narrowest sphere between its three spheres: the topology is that of the power diagram, the sizes are true.
 
 use super::cell::{PowerCell, Spheres};
+use super::places;
 use super::touching;
-use crate::crystal::neighbours::NeighbourList;
 use crate::crystal::{Cartesian, Fractional};
 use nalgebra::Vector3;
 use rayon::prelude::*;
@@ -126,28 +126,23 @@ type Place = (u32, [i32; 3]);
 
 /// The points of all pieces, each place once, and where each point went.
 fn joined(spheres: &Spheres<'_>, pieces: &[Piece]) -> (Vec<Vertex>, Vec<Place>) {
-    const NOWHERE: Place = (u32::MAX, [0; 3]);
-    let same = SAME_POINT * spheres.spacing;
     let points: Vec<Fractional> = pieces.iter().flat_map(|p| p.points.iter().copied()).collect();
-    let own: Vec<usize> = pieces.iter().enumerate().flat_map(|(i, p)| vec![i; p.points.len()]).collect();
-    let list = NeighbourList::new(spheres.lattice, &points, same);
-    let mut place = vec![NOWHERE; points.len()];
-    let mut vertices = Vec::with_capacity(points.len() / 4);
+    let own: Vec<usize> = pieces.iter().enumerate().flat_map(|(i, p)| std::iter::repeat_n(i, p.points.len())).collect();
+    let first = places::firsts(spheres.lattice, &points, SAME_POINT * spheres.spacing);
+    let mut id = vec![u32::MAX; points.len()];
+    let mut vertices: Vec<Vertex> = Vec::with_capacity(points.len() / 4);
+    let mut place = Vec::with_capacity(points.len());
     for (i, point) in points.iter().enumerate() {
-        if place[i] != NOWHERE {
-            continue;
+        if first[i] as usize == i {
+            id[i] = vertices.len() as u32;
+            let centre = spheres.lattice.cartesian(&spheres.centres[own[i]]).0;
+            let arm = spheres.lattice.cartesian(point).0 - centre;
+            let clearance = arm.norm() - spheres.radii[own[i]];
+            vertices.push(Vertex { position: point.reduced(), clearance });
         }
-        let position = point.reduced();
-        let id = vertices.len() as u32;
-        for n in list.around(&position, same) {
-            if place[n.index] == NOWHERE {
-                // The image of the point at `n.image` lies on the vertex: the point itself is that much before it.
-                place[n.index] = (id, n.image.map(|k| -k));
-            }
-        }
-        let centre = spheres.lattice.cartesian(&spheres.centres[own[i]]).0;
-        let arm = spheres.lattice.cartesian(point).0 - centre;
-        vertices.push(Vertex { position, clearance: arm.norm() - spheres.radii[own[i]] });
+        let id = id[first[i] as usize];
+        let apart = point.0 - vertices[id as usize].position.0;
+        place.push((id, [0, 1, 2].map(|k| apart[k].round() as i32)));
     }
     (vertices, place)
 }
@@ -189,26 +184,35 @@ pub fn sphere(spheres: &Spheres<'_>, (index, image): Image, start: &Vector3<f64>
 }
 
 fn edges(spheres: &Spheres<'_>, pieces: &[Piece], place: &[Place], vertices: &[Vertex], equal: bool) -> Vec<Edge> {
-    let mut raw: Vec<(u32, u32, [i32; 3], [Image; 3])> = Vec::new();
-    let mut start = 0;
-    for (centre, piece) in pieces.iter().enumerate() {
-        for (i, j, others) in &piece.edges {
-            let ((a, s), (b, t)) = (place[start + *i as usize], place[start + *j as usize]);
-            let shift = minus(t, s);
-            let forward = (a, [0; 3]) < (b, shift);
-            let (from, to, shift, frame) = if forward { (a, b, shift, s) } else { (b, a, shift.map(|k: i32| -k), t) };
-            if from == to && shift == [0; 3] {
-                continue;
-            }
-            let makers = [(centre, [0; 3]), others[0], others[1]].map(|(s, t)| (s, minus(t, frame)));
-            raw.push((from, to, shift, makers));
-        }
-        start += piece.points.len();
-    }
+    let starts: Vec<usize> = pieces
+        .iter()
+        .scan(0, |next, p| {
+            let start = *next;
+            *next += p.points.len();
+            Some(start)
+        })
+        .collect();
+    let ends = |centre: usize, edge: usize| {
+        let (i, j, _) = pieces[centre].edges[edge];
+        directed(place[starts[centre] + i as usize], place[starts[centre] + j as usize])
+    };
+    // Every cell around an edge has it; but for rounding, it is the same in each. The first cell's is taken.
+    let mut raw: Vec<(u32, u32, [i32; 3], u32, u32)> = (0..pieces.len())
+        .into_par_iter()
+        .flat_map_iter(|centre| {
+            (0..pieces[centre].edges.len()).filter_map(move |edge| {
+                let (from, to, shift, _) = ends(centre, edge);
+                ((from, [0; 3]) != (to, shift)).then_some((from, to, shift, centre as u32, edge as u32))
+            })
+        })
+        .collect();
     raw.par_sort_unstable();
     raw.dedup_by_key(|e| (e.0, e.1, e.2));
     raw.into_par_iter()
-        .map(|(from, to, shift, makers)| {
+        .map(|(from, to, shift, centre, edge)| {
+            let (centre, edge) = (centre as usize, edge as usize);
+            let (frame, others) = (ends(centre, edge).3, pieces[centre].edges[edge].2);
+            let makers = [(centre, [0; 3]), others[0], others[1]].map(|(s, t)| (s, minus(t, frame)));
             let (from, to) = (from as usize, to as usize);
             let end = Fractional(vertices[to].position.0 + Vector3::from(shift.map(f64::from)));
             let ends = [(vertices[from].position, vertices[from].clearance), (end, vertices[to].clearance)];
@@ -216,6 +220,13 @@ fn edges(spheres: &Spheres<'_>, pieces: &[Piece], place: &[Place], vertices: &[V
             Edge { from, to, shift, bottleneck, narrowest, inside }
         })
         .collect()
+}
+
+/// An edge between two points in the one direction in which it is kept: from, to, the cell of the latter relative to that
+/// of the former, and the cell in which the former lies.
+fn directed((a, s): Place, (b, t): Place) -> (u32, u32, [i32; 3], [i32; 3]) {
+    let shift = minus(t, s);
+    if (a, [0; 3]) < (b, shift) { (a, b, shift, s) } else { (b, a, shift.map(|k| -k), t) }
 }
 
 /// The narrowest place on an edge: where it passes the plane of its three spheres, if it does, else at an end.

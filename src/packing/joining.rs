@@ -33,20 +33,20 @@ impl Joining {
 
     /// The component's root and the cell of the node relative to it.
     pub fn root(&mut self, node: usize) -> (usize, [i32; 3]) {
-        let mut path = Vec::new();
-        let mut at = node;
-        while self.parent[at] != at {
-            path.push(at);
-            at = self.parent[at];
+        let (mut root, mut total) = (node, [0; 3]);
+        while self.parent[root] != root {
+            total = plus(total, self.offset[root]);
+            root = self.parent[root];
         }
-        // From the root down, every node on the path is hung on the root.
-        let mut total = [0; 3];
-        for &step in path.iter().rev() {
-            total = plus(total, self.offset[step]);
-            self.parent[step] = at;
-            self.offset[step] = total;
+        // Every node on the way is hung on the root.
+        let (mut at, mut rest) = (node, total);
+        while self.parent[at] != root {
+            let (next, step) = (self.parent[at], self.offset[at]);
+            (self.parent[at], self.offset[at]) = (root, rest);
+            rest = minus(rest, step);
+            at = next;
         }
-        (at, total)
+        (root, total)
     }
 
     /// Joins `a` with the image of `b` in the cell `shift`.

@@ -14,6 +14,7 @@ pub mod interstice;
 mod joining;
 mod layers;
 pub mod percolation;
+mod places;
 pub mod polyhedron;
 pub mod polytypes;
 mod saddle;

@@ -14,13 +14,29 @@ const FAR: f64 = 1.5;
 /// Gaps whose widths differ by less than this, in radii of the packing sphere, are equally wide; the inner one counts.
 const SAME_GAP: f64 = 1e-6;
 
+/// How much farther than to the clearance expected spheres are looked for at once.
+const ROOM: f64 = 0.1;
+
 /// The shell of a point, `least` spheres at least, in order of index and image.
 pub fn around(spheres: &Spheres<'_>, point: &Fractional, least: usize) -> Vec<Neighbour> {
-    let nearest = spheres.clearance(point);
+    expected(spheres, point, least, spheres.clearance(point)).0
+}
+
+/// The same, with the clearance of the point: quicker where that is nearly known beforehand.
+pub fn expected(spheres: &Spheres<'_>, point: &Fractional, least: usize, clearance: f64) -> (Vec<Neighbour>, f64) {
     // Distance as it would be from a sphere of radius 1.
     let of = |n: &Neighbour| n.distance - spheres.radii[n.index] + 1.0;
+    let reach = |clearance: f64| FAR * FAR * (clearance + 1.0) - 1.0 + spheres.largest;
+    let seen = reach(clearance) + ROOM;
+    let mut near = spheres.list.around(point, seen);
+    let found = near.iter().map(|n| n.distance - spheres.radii[n.index]).fold(f64::INFINITY, f64::min);
+    // A sphere not seen is farther than `seen` less its radius.
+    let nearest = if found <= seen - spheres.largest { found } else { spheres.clearance(point) };
+    if reach(nearest) > seen {
+        near = spheres.list.around(point, reach(nearest));
+    }
+    near.retain(|n| n.distance <= reach(nearest));
     let far = FAR * (nearest + 1.0);
-    let mut near = spheres.list.around(point, FAR * far - 1.0 + spheres.largest);
     near.sort_unstable_by(|a, b| of(a).total_cmp(&of(b)).then(a.index.cmp(&b.index)).then(a.image.cmp(&b.image)));
     let mut best = (0.0, near.len().min(least));
     for n in least..=near.len() {
@@ -35,7 +51,7 @@ pub fn around(spheres: &Spheres<'_>, point: &Fractional, least: usize) -> Vec<Ne
     }
     near.truncate(best.1);
     near.sort_unstable_by(|a, b| a.index.cmp(&b.index).then(a.image.cmp(&b.image)));
-    near
+    (near, nearest)
 }
 
 /// The spheres whose surfaces are nearest to a point, to within `slack`, in order of index and image.
