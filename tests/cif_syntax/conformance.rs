@@ -1,7 +1,8 @@
 //! The conformance set: files with the standard's verdict on each, from the folder that `INTERSTICE_CIF_CONFORMANCE`
 //! names. Its files carry licences of their own and are no part of this project.
 
-use interstice::format::cif::{Block, Datum, Document, Mode, Source, check_syntax, parse};
+use crate::round_trip::content;
+use interstice::format::cif::{Block, Datum, Document, Emitter, Mode, Source, check_syntax, parse};
 use std::collections::BTreeMap;
 use std::path::Path;
 
@@ -97,11 +98,27 @@ fn verdicts_are_those_of_the_standard() {
         }
         if expected && !argued && file != ARGUED_COUNT {
             let source = Source::decode(file, &bytes).unwrap();
-            check_counts(&parse(&source, Mode::Strict).unwrap(), &row);
+            let document = parse(&source, Mode::Strict).unwrap();
+            check_counts(&document, &row);
+            check_rewriting(&document, file);
         }
     }
     println!("{right} verdicts of 309 agree; {lines} first lines agree, {} differ with reason", OTHER_LINES.len());
     assert!(wrong.is_empty(), "{} wrong:\n{}", wrong.len(), wrong.join("\n"));
+}
+
+/// What was read is written in a legal form that reads alike.
+fn check_rewriting(document: &Document<'_>, file: &str) {
+    let text = match Emitter::rewrite(document) {
+        Ok(text) => text,
+        Err(why) => {
+            println!("{file}: {why}");
+            return;
+        }
+    };
+    assert_eq!(check_syntax(text.as_bytes()), [], "{file}\n{text}");
+    let source = Source::decode(file, text.as_bytes()).unwrap();
+    assert_eq!(content(&parse(&source, Mode::Strict).unwrap()), content(document), "{file}\n{text}");
 }
 
 fn check_counts(document: &Document<'_>, row: &BTreeMap<String, String>) {

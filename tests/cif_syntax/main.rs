@@ -3,3 +3,4 @@
 #![allow(clippy::unwrap_used, reason = "helpers of tests")]
 
 mod conformance;
+mod round_trip;

@@ -8,6 +8,7 @@ mod characters;
 pub mod citation;
 pub mod diagnostic;
 pub mod document;
+pub mod emit;
 mod grammar;
 mod lexer;
 mod names;
@@ -22,6 +23,7 @@ pub mod write;
 
 pub use diagnostic::{Diagnostic, Mode, Severity};
 pub use document::{Block, Document, Loop, Name};
+pub use emit::{EmitError, Emitter};
 pub use grammar::{MAX_CODE, MAX_NAME, parse};
 pub use number::Number;
 pub use source::{Source, Version};
