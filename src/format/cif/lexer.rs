@@ -358,21 +358,19 @@ impl<'s> Lexer<'s> {
 
     /// A keyword, or an unquoted value.
     fn unquoted(&mut self, start: usize, lead: u8) -> Token {
-        let rest = &self.text[start..];
-        if may_lead_keyword(lead)
-            && let Ok((_, (class, code))) = keyword(rest)
-        {
-            let length = length_of_word(rest.as_bytes(), false);
-            let end = start + length;
-            return self.finish(class, start, end, (end - code.len(), end));
-        }
         // Outside lists brackets end no word: the word holds them and is odd.
         let nested = self.depth > 0;
-        let length = length_of_word(rest.as_bytes(), nested).max(1);
+        let length = length_of_word(&self.text.as_bytes()[start..], nested).max(1);
         let end = start + length;
+        let word = &self.text[start..end];
+        if may_lead_keyword(lead)
+            && let Ok((_, (class, code))) = keyword(word)
+        {
+            return self.finish(class, start, end, (end - code.len(), end));
+        }
         let is_odd = match self.version {
             Version::Cif11 => matches!(lead, b'[' | b']' | b'$'),
-            Version::Cif20 => lead == b'$' || rest.as_bytes()[..length].iter().any(|b| is_bracket(*b)),
+            Version::Cif20 => lead == b'$' || word.bytes().any(is_bracket),
         };
         if nested {
             self.check_glue(end);
