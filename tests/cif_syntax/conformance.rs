@@ -79,7 +79,7 @@ fn verdicts_are_those_of_the_standard() {
     for row in rows(&folder, "expected.tsv") {
         let file = &row["file"];
         let bytes = std::fs::read(folder.join(file)).unwrap();
-        let faults = check_syntax(&bytes);
+        let faults = check_syntax(file, &bytes);
         let expected = row["verdict"] == "valid";
         let argued = ARGUED.iter().any(|(name, _)| name == file);
         match (faults.is_empty() == expected, argued) {
@@ -116,7 +116,7 @@ pub fn check_rewriting(document: &Document<'_>, file: &str) {
             return;
         }
     };
-    assert_eq!(check_syntax(text.as_bytes()), [], "{file}\n{text}");
+    assert_eq!(check_syntax("test", text.as_bytes()), [], "{file}\n{text}");
     let source = Source::decode(file, text.as_bytes()).unwrap();
     assert_eq!(content(&parse(&source, Mode::Strict).unwrap()), content(document), "{file}\n{text}");
 }

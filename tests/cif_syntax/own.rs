@@ -15,7 +15,7 @@ fn every_verdict_is_right() {
     for row in &table {
         let file = &row["file"];
         let bytes = std::fs::read(folder().join(file)).unwrap();
-        let faults = check_syntax(&bytes);
+        let faults = check_syntax(file, &bytes);
         assert_eq!(faults.is_empty(), row["verdict"] == "valid", "{file}: {}: {faults:?}", row["reason"]);
         match faults.first() {
             Some(first) => {

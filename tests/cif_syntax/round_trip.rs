@@ -59,7 +59,7 @@ fn emit_content(emitter: &mut Emitter, content: &Content) -> Result<(), EmitErro
 /// Written, valid by the letter, and read back the same.
 fn check(blocks: &[Content], version: Version) -> Result<(), TestCaseError> {
     let text = emitted(blocks, version).map_err(|e| TestCaseError::fail(e.to_string()))?;
-    let faults = check_syntax(text.as_bytes());
+    let faults = check_syntax("test", text.as_bytes());
     prop_assert!(faults.is_empty(), "{faults:?}\n{text}");
     let source = Source::decode("written", text.as_bytes()).unwrap();
     let document = parse(&source, Mode::Strict).unwrap();
@@ -191,7 +191,7 @@ proptest! {
 
 /// Reads bytes both ways and looks at all that was read; what a strict reader takes must also survive being rewritten.
 fn survives(bytes: &[u8]) {
-    let faults = check_syntax(bytes);
+    let faults = check_syntax("any", bytes);
     let Ok(source) = Source::decode("any", bytes) else {
         assert_eq!(faults.len(), 1);
         return;
@@ -206,7 +206,7 @@ fn survives(bytes: &[u8]) {
         }
         if faults.is_empty() {
             let Ok(text) = Emitter::rewrite(&document) else { return };
-            assert_eq!(check_syntax(text.as_bytes()), [], "{text}");
+            assert_eq!(check_syntax("test", text.as_bytes()), [], "{text}");
             let source = Source::decode("again", text.as_bytes()).unwrap();
             assert_eq!(content(&parse(&source, Mode::Strict).unwrap()), read, "{text}");
         }

@@ -8,6 +8,7 @@
 use super::diagnostic::{Faults, Recovery};
 use super::source::Version;
 use super::value::Kind;
+use crate::error::counted;
 use nom::branch::alt;
 use nom::bytes::complete::{tag, tag_no_case, take_till, take_till1, take_while};
 use nom::character::complete::char;
@@ -195,6 +196,9 @@ const LEADS_PLAIN_WORD: [bool; 256] = {
     }
     leads
 };
+
+/// Characters of a word that a message shows.
+const SHOWN: usize = 40;
 
 /// First letters of the keywords: spares nearly all values the attempt to read one.
 fn may_lead_keyword(b: u8) -> bool {
@@ -448,7 +452,7 @@ impl<'s> Lexer<'s> {
                             .to_owned();
                     let indented = text[from..].lines().skip(1).position(|line| line.trim() == ";");
                     if let Some(lines) = indented {
-                        message += &format!("; the `;` {} lines below is indented", lines + 1);
+                        message += &format!("; the `;` {} below is indented", counted(lines + 1, "line"));
                     }
                     message
                 });
@@ -476,8 +480,10 @@ impl<'s> Lexer<'s> {
         if !self.may_follow(end) {
             let rest = &self.text[end..];
             self.faults.push("cif::blank", end..end + 1, Recovery::Assumed, || {
-                let shown: String = rest.chars().take_while(|c| !is_blank_char(*c)).take(20).collect();
-                format!("a blank is missing before `{shown}`; a new value or name is taken to begin here")
+                let word = &rest[..length_of_word(rest.as_bytes(), false)];
+                let shown: String = word.chars().take(SHOWN).collect();
+                let dots = if shown.len() < word.len() { "..." } else { "" };
+                format!("a blank is missing before `{shown}{dots}`; a new value or name is taken to begin here")
             });
         }
     }

@@ -31,9 +31,9 @@ pub use structure::{ReadStructure, read_structures};
 pub use value::{Datum, Kind, Value};
 pub use write::{Description, write};
 
-/// What the standard says about a file's syntax, fault by fault; nothing for a valid file.
-pub fn check_syntax(bytes: &[u8]) -> Vec<Diagnostic> {
-    match Source::decode("", bytes) {
+/// What the standard says about the syntax of the file `name`, fault by fault; nothing for a valid file.
+pub fn check_syntax(name: &str, bytes: &[u8]) -> Vec<Diagnostic> {
+    match Source::decode(name, bytes) {
         Ok(source) => parse(&source, Mode::Strict).err().unwrap_or_default(),
         Err(refusal) => vec![refusal],
     }

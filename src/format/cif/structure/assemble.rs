@@ -105,10 +105,10 @@ fn owners(
         let [share, other] = rows.map(|row| list.occupant(row).occupancy);
         let together = owner.get(&i).unwrap_or(&i) == owner.get(&j).unwrap_or(&j);
         if !together && share + other > most {
+            let other_label = if rows[0] == rows[1] { "an image of it".into() } else { format!("`{}`", second.label) };
             let text = format!(
-                "`{}` and `{}` are {distance:.3} Å apart with occupancies {} and {}; no two atoms can be that near",
+                "`{}` and {other_label} are {distance:.3} Å apart with occupancies {} and {}; no two atoms can be that near",
                 first.label,
-                second.label,
                 to_f64(&share),
                 to_f64(&other)
             );
@@ -116,7 +116,8 @@ fn owners(
         }
         if distance > QUIET_SHIFT && said.insert(rows) {
             let how = if together { "are taken as one shared site" } else { "are taken as alternatives of one atom" };
-            let text = format!("`{}` and `{}` are {distance:.3} Å apart and {how}", first.label, second.label);
+            let other_label = if rows[0] == rows[1] { "an image of it".into() } else { format!("`{}`", second.label) };
+            let text = format!("`{}` and {other_label} are {distance:.3} Å apart and {how}", first.label);
             remarks.push(("cif::shared", second.place as usize, text));
         }
     }

@@ -303,6 +303,10 @@ impl<'f> Types<'f> {
             return Err(report.error("cif::type", place, "the site has neither label nor type symbol".into()));
         };
         let text = value.text();
+        if stated.is_none() && type_symbol.is_some() {
+            let said = format!("`{text}` has no type symbol; its element is taken from the label");
+            report.warn("cif::type", value.place(), said);
+        }
         // Labels differ in their numbers; unless they end in a charge, what is before the first digit decides.
         let key = if stated.is_some() || text.ends_with(['+', '-']) {
             &text[..]
