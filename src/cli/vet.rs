@@ -88,7 +88,7 @@ fn read(path: &str) -> Result<Vec<u8>, Error> {
 
 /// Whether the file's syntax is at fault.
 fn vet_syntax(path: &str) -> Result<bool, Error> {
-    let faults = cif::check_syntax(&read(path)?);
+    let faults = cif::check_syntax(path, &read(path)?);
     let lines: String = faults.iter().map(|fault| fault.one_line(path) + "\n").collect();
     print(&lines);
     Ok(!faults.is_empty())
@@ -110,7 +110,11 @@ fn fail(path: &str, mut faults: Vec<Diagnostic>, text: &str) -> Error {
 /// Whether a rule is broken in any structure of the file.
 fn vet(path: &str, arguments: &Arguments) -> Result<bool, Error> {
     let bytes = read(path)?;
-    let source = Source::decode(path, &bytes).map_err(|fault| fail(path, vec![fault], ""))?;
+    // There is no text yet to show a line of.
+    let source = Source::decode(path, &bytes).map_err(|fault| {
+        let report = fault.one_line(path);
+        Error::Cif { path: path.into(), faults: vec![fault], report }
+    })?;
     let document = parse(&source, Mode::Lenient).map_err(|faults| fail(path, faults, source.text()))?;
     let structures = read_structures(&document);
     let mut faults = Vec::new();

@@ -154,6 +154,33 @@ fn special_positions_are_found_and_overlaps_refused() {
     assert!(said.contains("taken as alternatives of one atom"), "{said}");
 }
 
+/// Core CIF dictionary 3.4.0, `_atom_site.disorder_assembly` and `_atom_site.disorder_group`.
+#[test]
+fn disorder_groups_tell_alternatives() {
+    let p1 = format!("{SYMOPS}x,y,z\n-x,-y,-z");
+    let list =
+        sites("").replace("_occupancy\n", "_occupancy\n_atom_site_disorder_assembly\n_atom_site_disorder_group\n");
+    let at =
+        |rows: &str| reads(&block(&cell("5", "5", "90"), &p1, &format!("{list}{rows}\nCl1 Cl1- 0.5 0.5 0.5 1 . .")));
+    let (n, said) = at("Na1 Na1+ 0.2 0.2 0.2 0.5 A 1\nNa2 Na1+ 0.26 0.2 0.2 0.5 A 2");
+    assert_eq!((n, said.as_str()), (5, ""), "stated alternatives need no word");
+    let (_, said) = at("Na1 Na1+ 0.2 0.2 0.2 0.5 . .\nNa2 Na1+ 0.26 0.2 0.2 0.5 . .");
+    assert!(said.contains("`Na1` and `Na2` are 0.300 Å apart and are taken as alternatives of one atom"), "{said}");
+    let (_, said) = at("Na1 Na1+ 0.2 0.2 0.2 0.5 A 1\nNa2 Na1+ 0.26 0.2 0.2 0.5 A 1");
+    assert!(said.contains("are in one disorder group, but cannot both be there"), "{said}");
+    let (n, said) = at("Na1 Na1+ 0.2 0.2 0.2 1 A 1\nNa2 Na1+ 0.26 0.2 0.2 1 A 2");
+    assert_eq!(n, 5);
+    assert!(
+        said.contains("`Na1`, `Na2` are alternatives of other sites by their disorder groups, but have an"),
+        "{said}"
+    );
+    // About the centre of inversion, each image half the time.
+    let (_, said) = at("Na1 Na1+ 0.04 0.02 0 0.5 A -1");
+    assert_eq!(said, "");
+    let (_, said) = at("Na1 Na1+ 0.04 0.02 0 0.5 A 1");
+    assert!(said.contains("`Na1` and an image of it are 0.447 Å apart"), "{said}");
+}
+
 #[test]
 fn occupancies_are_exact() {
     let p1 = format!("{SYMOPS}x,y,z");

@@ -1,7 +1,8 @@
 //! The conformance set: files with the standard's verdict on each, from the folder that `INTERSTICE_CIF_CONFORMANCE`
 //! names. Its files carry licences of their own and are no part of this project.
 
-use interstice::format::cif::{Block, Datum, Document, Mode, Source, check_syntax, parse};
+use crate::round_trip::content;
+use interstice::format::cif::{Block, Datum, Document, Emitter, Mode, Source, check_syntax, parse};
 use std::collections::BTreeMap;
 use std::path::Path;
 
@@ -56,7 +57,7 @@ const ARGUED_COUNT: &str = "valid-1.1/h11_cr_only.cif";
 /// as are the other bare numbers of the table.
 const ARGUED_VALUE: (&str, &str) = ("valid-1.1/h11_comment_after_value.cif", "_c");
 
-fn rows(folder: &Path, table: &str) -> Vec<BTreeMap<String, String>> {
+pub fn rows(folder: &Path, table: &str) -> Vec<BTreeMap<String, String>> {
     let text = std::fs::read_to_string(folder.join(table)).unwrap();
     let mut lines = text.lines();
     let heads: Vec<&str> = lines.next().unwrap().split('\t').collect();
@@ -78,7 +79,7 @@ fn verdicts_are_those_of_the_standard() {
     for row in rows(&folder, "expected.tsv") {
         let file = &row["file"];
         let bytes = std::fs::read(folder.join(file)).unwrap();
-        let faults = check_syntax(&bytes);
+        let faults = check_syntax(file, &bytes);
         let expected = row["verdict"] == "valid";
         let argued = ARGUED.iter().any(|(name, _)| name == file);
         match (faults.is_empty() == expected, argued) {
@@ -97,14 +98,30 @@ fn verdicts_are_those_of_the_standard() {
         }
         if expected && !argued && file != ARGUED_COUNT {
             let source = Source::decode(file, &bytes).unwrap();
-            check_counts(&parse(&source, Mode::Strict).unwrap(), &row);
+            let document = parse(&source, Mode::Strict).unwrap();
+            check_counts(&document, &row);
+            check_rewriting(&document, file);
         }
     }
     println!("{right} verdicts of 309 agree; {lines} first lines agree, {} differ with reason", OTHER_LINES.len());
     assert!(wrong.is_empty(), "{} wrong:\n{}", wrong.len(), wrong.join("\n"));
 }
 
-fn check_counts(document: &Document<'_>, row: &BTreeMap<String, String>) {
+/// What was read is written in a legal form that reads alike.
+pub fn check_rewriting(document: &Document<'_>, file: &str) {
+    let text = match Emitter::rewrite(document) {
+        Ok(text) => text,
+        Err(why) => {
+            println!("{file}: {why}");
+            return;
+        }
+    };
+    assert_eq!(check_syntax("test", text.as_bytes()), [], "{file}\n{text}");
+    let source = Source::decode(file, text.as_bytes()).unwrap();
+    assert_eq!(content(&parse(&source, Mode::Strict).unwrap()), content(document), "{file}\n{text}");
+}
+
+pub fn check_counts(document: &Document<'_>, row: &BTreeMap<String, String>) {
     let frames = document.blocks.iter().map(|b| b.frames.len()).sum::<usize>();
     let loops_of = |b: &Block<'_>| b.loops.len() + b.frames.iter().map(|f| f.loops.len()).sum::<usize>();
     let loops = document.blocks.iter().map(loops_of).sum::<usize>();
@@ -133,21 +150,10 @@ fn values_are_those_of_the_table() {
         let index = row["row"].parse::<usize>().unwrap_or(1) - 1;
         let value = table.value(index, table.column(&[&row["name"]]).unwrap());
         let number = value.number().filter(|_| matches!(value.datum(), Datum::Number(_)));
-        let (json, kind) = match value.datum() {
-            Datum::Unknown => ("\"?\"".into(), "unknown".to_owned()),
-            Datum::Inapplicable => ("\".\"".into(), "inapplicable".to_owned()),
-            Datum::Number(_) | Datum::Text(_) if number.is_some() => {
-                (serde_json::to_string(&value.text()).unwrap(), "numb".to_owned())
-            }
-            Datum::Text(text) => (serde_json::to_string(&text).unwrap(), "str".to_owned()),
-            Datum::List(_) => (json(&value.datum()).to_string(), "list".to_owned()),
-            Datum::Table(_) => (json(&value.datum()).to_string(), "table".to_owned()),
-            Datum::Number(text) => (text, "no number".to_owned()),
-        };
-        let same_json = serde_json::from_str::<serde_json::Value>(&json).ok()
-            == serde_json::from_str::<serde_json::Value>(&row["value_as_json"]).ok();
+        let (kind, json) = said(&value.datum());
+        let same_json = serde_json::from_str::<serde_json::Value>(&row["value_as_json"]).unwrap() == json;
         let mut words = row["kind"].split(' ');
-        let same_kind = words.next() == Some(&kind);
+        let same_kind = words.next() == Some(kind);
         let stated: Vec<f64> = row["kind"].split(' ').filter_map(|w| w.parse().ok()).collect();
         // `numb VALUE su SU`, `numb su SU`, `numb VALUE no su`.
         let same_number = number.is_none_or(|n| match (stated.as_slice(), row["kind"].contains(" su ")) {
@@ -166,6 +172,19 @@ fn values_are_those_of_the_table() {
     }
     println!("{} values of {} agree", table.len() - wrong.len() - 1, table.len());
     assert!(wrong.is_empty(), "{}", wrong.join("\n"));
+}
+
+/// Kind and JSON of a value as the tables of values have them.
+pub fn said(datum: &Datum) -> (&'static str, serde_json::Value) {
+    let kind = match datum {
+        Datum::Unknown => "unknown",
+        Datum::Inapplicable => "inapplicable",
+        Datum::Number(_) => "numb",
+        Datum::Text(_) => "str",
+        Datum::List(_) => "list",
+        Datum::Table(_) => "table",
+    };
+    (kind, json(datum))
 }
 
 fn json(datum: &Datum) -> serde_json::Value {

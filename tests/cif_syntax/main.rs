@@ -3,3 +3,6 @@
 #![allow(clippy::unwrap_used, reason = "helpers of tests")]
 
 mod conformance;
+mod gallery;
+mod own;
+mod round_trip;

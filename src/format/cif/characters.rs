@@ -66,6 +66,14 @@ pub(super) fn check_characters(source: &Source<'_>, faults: &mut Faults) {
     }
 }
 
+/// Whether a character may stand in a file of the version, outside comments and in them.
+pub(super) fn is_allowed(c: char, version: Version) -> bool {
+    match version {
+        Version::Cif11 => matches!(c, '\t' | '\n' | '\r' | ' '..='~'),
+        Version::Cif20 => is_allowed_in_cif_2(c),
+    }
+}
+
 /// Production `allchars` of CIF 2.0.
 fn is_allowed_in_cif_2(c: char) -> bool {
     let code = u32::from(c);

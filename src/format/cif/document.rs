@@ -34,12 +34,14 @@ impl Document<'_> {
         place(self.source, offset)
     }
 
-    /// Warnings that concern a block: those inside it, and for the first block what stands before it.
+    /// Warnings that concern a block: those inside it, for the first block what stands before it, for the last what
+    /// stands behind it.
     pub fn warnings_of(&self, block: &Block<'_>) -> &[Diagnostic] {
-        let is_first = self.blocks.first().is_some_and(|first| first.extent == block.extent);
-        let start = if is_first { 0 } else { block.extent.start };
+        let is = |other: Option<&Block<'_>>| other.is_some_and(|other| other.extent == block.extent);
+        let start = if is(self.blocks.first()) { 0 } else { block.extent.start };
+        let end = if is(self.blocks.last()) { usize::MAX } else { block.extent.end };
         let at = |offset| self.warnings.partition_point(|w| w.offset < offset);
-        &self.warnings[at(start)..at(block.extent.end)]
+        &self.warnings[at(start)..at(end)]
     }
 }
 

@@ -520,9 +520,11 @@ impl<'s> Parser<'s> {
             self.lexer.at = end;
             return Span::new(Kind::List, token.start, end);
         }
-        self.warn("cif::unquoted", token, || {
-            format!("`{shown}` must be quoted: an unquoted value cannot begin with `$` nor hold brackets as this one does; it is taken as text")
-        });
+        let rule = match self.lexer.version {
+            Version::Cif11 => "an unquoted value cannot begin with `[`, `]` or `$`",
+            Version::Cif20 => "an unquoted value of CIF 2.0 cannot begin with `$` nor hold a bracket or brace",
+        };
+        self.warn("cif::unquoted", token, || format!("`{shown}` must be quoted: {rule}; it is taken as text"));
         Span::new(Kind::Bare, token.start, token.end)
     }
 

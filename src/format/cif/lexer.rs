@@ -8,6 +8,7 @@
 use super::diagnostic::{Faults, Recovery};
 use super::source::Version;
 use super::value::Kind;
+use crate::error::counted;
 use nom::branch::alt;
 use nom::bytes::complete::{tag, tag_no_case, take_till, take_till1, take_while};
 use nom::character::complete::char;
@@ -196,6 +197,9 @@ const LEADS_PLAIN_WORD: [bool; 256] = {
     leads
 };
 
+/// Characters of a word that a message shows.
+const SHOWN: usize = 40;
+
 /// First letters of the keywords: spares nearly all values the attempt to read one.
 fn may_lead_keyword(b: u8) -> bool {
     matches!(b.to_ascii_lowercase(), b'd' | b's' | b'l' | b'g')
@@ -358,21 +362,19 @@ impl<'s> Lexer<'s> {
 
     /// A keyword, or an unquoted value.
     fn unquoted(&mut self, start: usize, lead: u8) -> Token {
-        let rest = &self.text[start..];
-        if may_lead_keyword(lead)
-            && let Ok((_, (class, code))) = keyword(rest)
-        {
-            let length = length_of_word(rest.as_bytes(), false);
-            let end = start + length;
-            return self.finish(class, start, end, (end - code.len(), end));
-        }
         // Outside lists brackets end no word: the word holds them and is odd.
         let nested = self.depth > 0;
-        let length = length_of_word(rest.as_bytes(), nested).max(1);
+        let length = length_of_word(&self.text.as_bytes()[start..], nested).max(1);
         let end = start + length;
+        let word = &self.text[start..end];
+        if may_lead_keyword(lead)
+            && let Ok((_, (class, code))) = keyword(word)
+        {
+            return self.finish(class, start, end, (end - code.len(), end));
+        }
         let is_odd = match self.version {
             Version::Cif11 => matches!(lead, b'[' | b']' | b'$'),
-            Version::Cif20 => lead == b'$' || rest.as_bytes()[..length].iter().any(|b| is_bracket(*b)),
+            Version::Cif20 => lead == b'$' || word.bytes().any(is_bracket),
         };
         if nested {
             self.check_glue(end);
@@ -450,7 +452,7 @@ impl<'s> Lexer<'s> {
                             .to_owned();
                     let indented = text[from..].lines().skip(1).position(|line| line.trim() == ";");
                     if let Some(lines) = indented {
-                        message += &format!("; the `;` {} lines below is indented", lines + 1);
+                        message += &format!("; the `;` {} below is indented", counted(lines + 1, "line"));
                     }
                     message
                 });
@@ -478,8 +480,10 @@ impl<'s> Lexer<'s> {
         if !self.may_follow(end) {
             let rest = &self.text[end..];
             self.faults.push("cif::blank", end..end + 1, Recovery::Assumed, || {
-                let shown: String = rest.chars().take_while(|c| !is_blank_char(*c)).take(20).collect();
-                format!("a blank is missing before `{shown}`; a new value or name is taken to begin here")
+                let word = &rest[..length_of_word(rest.as_bytes(), false)];
+                let shown: String = word.chars().take(SHOWN).collect();
+                let dots = if shown.len() < word.len() { "..." } else { "" };
+                format!("a blank is missing before `{shown}{dots}`; a new value or name is taken to begin here")
             });
         }
     }

@@ -8,6 +8,7 @@ mod characters;
 pub mod citation;
 pub mod diagnostic;
 pub mod document;
+pub mod emit;
 mod grammar;
 mod lexer;
 mod names;
@@ -22,6 +23,7 @@ pub mod write;
 
 pub use diagnostic::{Diagnostic, Mode, Severity};
 pub use document::{Block, Document, Loop, Name};
+pub use emit::{EmitError, Emitter};
 pub use grammar::{MAX_CODE, MAX_NAME, parse};
 pub use number::Number;
 pub use source::{Source, Version};
@@ -29,9 +31,9 @@ pub use structure::{ReadStructure, read_structures};
 pub use value::{Datum, Kind, Value};
 pub use write::{Description, write};
 
-/// What the standard says about a file's syntax, fault by fault; nothing for a valid file.
-pub fn check_syntax(bytes: &[u8]) -> Vec<Diagnostic> {
-    match Source::decode("", bytes) {
+/// What the standard says about the syntax of the file `name`, fault by fault; nothing for a valid file.
+pub fn check_syntax(name: &str, bytes: &[u8]) -> Vec<Diagnostic> {
+    match Source::decode(name, bytes) {
         Ok(source) => parse(&source, Mode::Strict).err().unwrap_or_default(),
         Err(refusal) => vec![refusal],
     }

@@ -56,6 +56,11 @@ impl Nested {
                 Class::Value(_) | Class::Odd | Class::Open if level.awaits == Awaits::Key => reader.key(token),
                 Class::Open => reader.open(token),
                 Class::Value(_) | Class::Odd => reader.member(token),
+                Class::Loop | Class::Reserved | Class::SaveEnd | Class::DataHeading | Class::SaveHeading
+                    if reader.is_before_bracket(token) =>
+                {
+                    reader.reserved(token);
+                }
                 _ => reader.unclosed(token),
             }
         }
@@ -155,6 +160,19 @@ impl Reader<'_, '_> {
             });
         }
         self.add(Span::new(kind, token.from, token.to));
+    }
+
+    fn is_before_bracket(&self, token: Token) -> bool {
+        matches!(self.lexer.text.as_bytes().get(token.end), Some(b'[' | b']' | b'{' | b'}'))
+    }
+
+    /// A keyword as a member, kept as a value.
+    fn reserved(&mut self, token: Token) {
+        let word = self.shown(token);
+        self.refuse("cif::reserved", token, || {
+            format!("`{word}` is a reserved word; as a member of a list or table it must be quoted")
+        });
+        self.add(Span::new(Kind::Bare, token.start, token.end));
     }
 
     /// A name, keyword or the end of the file where a bracket should be.

@@ -7,15 +7,19 @@
 mod assemble;
 mod cell;
 mod contacts;
+mod disorder;
 mod expand;
 mod formula;
 mod group;
 mod labels;
 pub(super) mod operations;
+mod position;
 mod report;
+mod shares;
 mod sites;
 mod source;
 mod species;
+mod types;
 
 use super::citation::Citation;
 use super::{Block, Diagnostic, Document};

@@ -9,6 +9,7 @@ mod formula;
 mod text;
 
 use super::citation::Citation;
+use super::emit::quoted;
 use crate::crystal::Structure;
 use crate::crystal::lattice::LatticeError;
 use crate::crystal::symmetry::{self, SpaceGroup, SymmetryError, TOLERANCE};
@@ -16,7 +17,7 @@ use crate::ion::{Amount, Species};
 use atoms::AtomList;
 use digits::{WrittenCell, rounded, rounded_on_element};
 use num_traits::{One, Zero};
-use text::{ascii, quoted, text_field};
+use text::{ascii, text_field};
 
 /// Longest block code of CIF 1.1 (file syntax, paragraph 30).
 const MAX_BLOCK_CODE: usize = 75;

@@ -1,6 +1,7 @@
 //! The cell from its listed sites: images, shared positions, overlaps.
 
 use super::contacts::Contact;
+use super::disorder::Relation;
 use super::expand::{MAX_SITES, SHARE_TOLERANCE, near_pairs, orbit, wrapped};
 use super::labels::Labels;
 use super::report::Report;
@@ -104,19 +105,28 @@ fn owners(
         let [first, second] = rows.map(|row| &list.sites[row]);
         let [share, other] = rows.map(|row| list.occupant(row).occupancy);
         let together = owner.get(&i).unwrap_or(&i) == owner.get(&j).unwrap_or(&j);
+        let relation = list.groups.relation(first.group, second.group, rows[0] == rows[1]);
+        if relation == Relation::Apart && !together {
+            continue;
+        }
         if !together && share + other > most {
+            let other_label = if rows[0] == rows[1] { "an image of it".into() } else { format!("`{}`", second.label) };
             let text = format!(
-                "`{}` and `{}` are {distance:.3} Å apart with occupancies {} and {}; no two atoms can be that near",
+                "`{}` and {other_label} are {distance:.3} Å apart with occupancies {} and {}; no two atoms can be that near",
                 first.label,
-                second.label,
                 to_f64(&share),
                 to_f64(&other)
             );
             return Err(report.error("cif::overlap", second.place as usize, text));
         }
         if distance > QUIET_SHIFT && said.insert(rows) {
-            let how = if together { "are taken as one shared site" } else { "are taken as alternatives of one atom" };
-            let text = format!("`{}` and `{}` are {distance:.3} Å apart and {how}", first.label, second.label);
+            let how = match (together, relation) {
+                (true, _) => "are taken as one shared site",
+                (false, Relation::Together) => "are in one disorder group, but cannot both be there",
+                (false, _) => "are taken as alternatives of one atom",
+            };
+            let other_label = if rows[0] == rows[1] { "an image of it".into() } else { format!("`{}`", second.label) };
+            let text = format!("`{}` and {other_label} are {distance:.3} Å apart and {how}", first.label);
             remarks.push(("cif::shared", second.place as usize, text));
         }
     }

@@ -83,6 +83,10 @@ fn listed(block: &Block<'_>, report: &mut Report<'_, '_>) -> Result<Option<(Vec<
         return Err(report.error("cif::operation", place, text));
     };
     let distinct = set(&given).len();
+    if distinct < given.len() {
+        let text = format!("{} of the {} listed operations stand there twice", given.len() - distinct, given.len());
+        report.warn("cif::operation", place, text);
+    }
     if group.len() > distinct {
         let text =
             format!("the {distinct} listed operations are no whole group; {} more are added", group.len() - distinct);
@@ -140,6 +144,13 @@ fn check_against_symbols(
     }
     if let Some(value) = symbol {
         let settings = symbols::settings_of_hermann_mauguin(&value.text());
+        if settings.is_empty() {
+            let text = format!(
+                "the symbol `{}` is no space group of the tables; the listed operations are used",
+                value.text()
+            );
+            report.warn("cif::symmetry", value.place(), text);
+        }
         let of_setting = |s: &i32| SpaceGroup::from_hall_number(*s).map(|g| set(&g.operations));
         if !settings.is_empty() && settings.iter().filter_map(of_setting).all(|s| s != ours) {
             let text =

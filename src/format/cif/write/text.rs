@@ -91,28 +91,6 @@ fn push_markup(out: &mut String, c: char) {
     out.push('?');
 }
 
-/// ASCII text as one value of a line: bare where it is safe, else between quotes that it does not hold; `None` when it
-/// needs a text field. What a quote encloses is legal in CIF 2.0 as well.
-pub(super) fn quoted(text: &str) -> Option<String> {
-    let reserved = |word: &str| {
-        let lower = word.to_ascii_lowercase();
-        matches!(lower.as_str(), "loop_" | "stop_" | "global_" | "?" | ".")
-            || lower.starts_with("data_")
-            || lower.starts_with("save_")
-    };
-    let first_is_safe = text.starts_with(|c: char| c.is_ascii_alphanumeric());
-    let is_safe = |c: char| c.is_ascii_graphic() && !"[]{}\"'#$,;\\".contains(c);
-    if first_is_safe && text.chars().all(is_safe) && !reserved(text) {
-        Some(text.to_owned())
-    } else if !text.contains('\'') {
-        Some(format!("'{text}'"))
-    } else if !text.contains('"') {
-        Some(format!("\"{text}\""))
-    } else {
-        None
-    }
-}
-
 /// A text field of paragraphs, each folded at blanks into lines of at most [`LINE`] characters; the delimiters `;`
 /// and a line end are included. No line of the content begins with `;`, so the field cannot end early.
 pub(super) fn text_field(paragraphs: &[String]) -> String {
