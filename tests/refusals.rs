@@ -35,6 +35,19 @@ fn wrong_input_is_told_with_place_and_remedy() {
     .unwrap();
     std::fs::write(folder.join("open.cif"), "data_x\n_chemical_name_common 'spinel\n").unwrap();
     std::fs::write(folder.join("empty.cif"), "").unwrap();
+    std::fs::write(
+        folder.join("rocksalt.cif"),
+        "data_x\n_cell_length_a 4.2\n_cell_length_b 4.2\n_cell_length_c 4.2\n_cell_angle_alpha 90\n_cell_angle_beta 90\n\
+         _cell_angle_gamma 90\n_space_group_name_H-M_alt 'F m -3 m'\nloop_\n_atom_site_label\n_atom_site_fract_x\n\
+         _atom_site_fract_y\n_atom_site_fract_z\nMg1 0 0 0\nO1 0.5 0.5 0.5\n",
+    )
+    .unwrap();
+    std::fs::create_dir(folder.join("hosts")).unwrap();
+    std::fs::write(
+        folder.join("hosts/mine.json"),
+        include_str!("../templates/hosts/fluorite-cations.json").replace("\"at\": [0, 0, 0]", "\"at\": [0, \"v\", 0]"),
+    )
+    .unwrap();
     std::fs::write(folder.join("recipe.json"), "{\"composition\": \"MgO\", \"sede\": 3}").unwrap();
     std::fs::write(folder.join("wrong.json"), "{\"composition\": \"MgO\", \"cell\": {\"atoms\": -3}}").unwrap();
     let build = |composition: &'static str, more: &[&'static str]| -> Vec<&'static str> {
@@ -95,6 +108,31 @@ fn wrong_input_is_told_with_place_and_remedy() {
         vec!["radii", "Og"],
         vec!["radii", "Fe", "--with", "Mg"],
         vec!["holes", "nothing"],
+        vec!["holes", "stack:"],
+        vec!["holes", "stack:hx"],
+        vec!["holes", "ax3:hc:A=3"],
+        vec!["holes", "ax3:hc:B=1"],
+        vec!["holes", "pyrochlore:x=0.4"],
+        vec!["holes", "missing.cif#O"],
+        vec!["holes", "rocksalt.cif"],
+        vec!["holes", "rocksalt.cif#S"],
+        vec!["holes", "rocksalt.cif#Qq"],
+        vec!["holes", "rocksalt.cif#O:9"],
+        vec!["holes", "truncated.cif#O"],
+        vec!["holes", "rocksalt.cif#O", "--spheres", "O"],
+        vec!["holes", "ccp", "--spheres", "Y=O"],
+        vec!["holes", "ccp", "--spheres", "X=1"],
+        vec!["holes", "ccp", "--mobile", "Li"],
+        vec!["holes", "ccp", "--mobile", "-1"],
+        vec!["holes", "ccp", "--into", "ccp.cif"],
+        vec!["holes", "ax3:c", "--spheres", "O", "--into", "ax3.cif"],
+        vec!["holes", "ccp", "--spheres", "O", "--into", "file"],
+        vec!["holes", "ccp", "--templates", "taken"],
+        vec!["holes", "ccp", "--templates", "hosts"],
+        vec!["holes", "--stackings", "99"],
+        vec!["seat", "CaF2", "--packing", "fluorite-cations"],
+        vec!["seat", "SrTiO3", "--packing", "ax3:c", "--seats", "Sr:A=2"],
+        vec!["seat", "MgO", "--packing", "rocksalt.cif#O,F"],
     ];
     let shown: Vec<String> = calls.iter().map(|call| run(call, &folder)).collect();
     insta::assert_snapshot!(shown.join("\n"));

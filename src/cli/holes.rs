@@ -19,7 +19,7 @@ pub struct Arguments {
     #[arg(required_unless_present_any = ["hosts", "stackings"])]
     host: Option<String>,
     /// The ion that is to move, with its radius in Å if you wish: `Li`, `Li:0.59`; or a ratio to the packing sphere, `0.15`
-    #[arg(long, value_name = "ION|RATIO")]
+    #[arg(long, value_name = "ION|RATIO", allow_negative_numbers = true)]
     mobile: Option<String>,
     /// Which ions the spheres are: `O`, or `X=O,A=Sr`; lengths are then given in Å too
     #[arg(long, value_name = "IONS")]

@@ -145,6 +145,11 @@ fn letters(text: &str) -> Result<Vec<u8>, StackingError> {
     if !(2..=MAX_LAYERS).contains(&count) {
         return Err(StackingError::Length { text: shown(text), layers: count });
     }
+    // A letter of neither notation is told before one of the other.
+    let stranger = |c: char| !"ABCH".contains(c.to_ascii_uppercase());
+    if let Some((at, found)) = text.chars().enumerate().find(|(_, c)| stranger(*c)) {
+        return Err(StackingError::Letter { text: shown(text), column: at + 1, found });
+    }
     text.chars()
         .enumerate()
         .map(|(at, c)| match c.to_ascii_uppercase() {

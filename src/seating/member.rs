@@ -76,13 +76,13 @@ pub fn members(
         let name = &host.roles[place.role].name;
         let total: Amount = taken.iter().map(|(_, amount)| *amount).sum();
         if total > place.room {
-            return Err(SeatingError::TooFew {
+            return Err(SeatingError::NoSphere {
                 composition: composition.to_string(),
                 needed: total,
-                kind: format!("sphere {name}"),
+                sphere: name.clone(),
                 host: host.name.clone(),
                 available: place.room,
-                remedy: format!("send fewer ions there, for example `{}:{name}={}`", taken[0].0, place.room),
+                element: taken[0].0.element,
             });
         }
         if total < place.room {

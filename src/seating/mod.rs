@@ -41,6 +41,24 @@ pub enum SeatingError {
         /// The host's name.
         host: String,
     },
+    /// More cations are sent into the packing than it has spheres for.
+    #[error(
+        "`{composition}`: {needed} cations per formula unit are sent to the spheres {sphere} of {host}, which has {available}; send fewer, for example `{element}:{sphere}={available}`"
+    )]
+    NoSphere {
+        /// The composition.
+        composition: String,
+        /// How many are sent.
+        needed: Amount,
+        /// Name of the sphere.
+        sphere: String,
+        /// The host's name.
+        host: String,
+        /// How many there are.
+        available: Amount,
+        /// Element of the first of them.
+        element: crate::ion::Element,
+    },
     /// The packing cannot hold that many cations.
     #[error(
         "`{composition}` asks for {needed} interstices of {kind} per formula unit, but {host} offers {available}; {remedy}"
