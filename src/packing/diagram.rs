@@ -260,6 +260,11 @@ fn bottleneck(
     // From where the straight line between the ends passes the plane.
     let start = along * (height_p / (height_p - height_q));
     let (shift, _) = touching::centre(&[a, b, c].map(|(v, r)| (v - start, r)));
+    // Three spheres of which one lies nearly within another are touched far away or nowhere.
+    let nearby = shift.norm() < spheres.spacing;
+    if !nearby {
+        return at_end();
+    }
     let point = spheres.lattice.fractional(&Cartesian(p + start + shift));
     let clearance = spheres.clearance(&point);
     if clearance < ends[0].1.min(ends[1].1) { (point, clearance, true) } else { at_end() }

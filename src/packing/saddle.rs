@@ -27,6 +27,10 @@ const ROUNDING: f64 = 1e-9;
 /// How much of the unit sphere's radius the hull of the directions to a whole shell must leave around the saddle.
 const MARGIN: f64 = 0.1;
 
+/// Largest distance of the origin from the hull of the directions to the spheres of a saddle: where spheres of very
+/// different radii overlap, a passage may be narrowed from one side only.
+const HELD: f64 = 0.25;
+
 /// A saddle nearer than this to an interstice of the same size, in radii of the packing sphere, is part of it.
 const IN_HOLE: f64 = 0.3;
 
@@ -42,6 +46,10 @@ pub(super) fn saddles(
     let centres: Vec<Fractional> = basins.holes.iter().map(|h| h.position).collect();
     let list = NeighbourList::new(spheres.lattice, &centres, IN_HOLE);
     let apart = |hole: &Hole| {
+        let directions: Vec<_> = hole.shell.iter().map(|n| n.vector).collect();
+        if touching::imbalance(&directions) > HELD {
+            return false;
+        }
         let near = list.around(&hole.position, IN_HOLE);
         near.iter().all(|n| basins.holes[n.index].ratio - hole.ratio >= DEPTH)
     };

@@ -262,12 +262,9 @@ fn orbits(host: &Host, places: &[Interstice]) -> Vec<Orbit> {
 }
 
 fn window_orbits(host: &Host, survey: &Survey) -> Vec<WindowOrbit> {
-    let mut firsts: Vec<&Window> = Vec::new();
-    for window in &survey.windows {
-        if firsts.iter().all(|first| first.orbit != window.orbit) {
-            firsts.push(window);
-        }
-    }
+    let mut seen = vec![false; survey.windows.len()];
+    let mut firsts: Vec<&Window> =
+        survey.windows.iter().filter(|w| !std::mem::replace(&mut seen[w.orbit], true)).collect();
     // Equal ratios, up to rounding, in the order in which they were found.
     firsts.sort_by_key(|w| (-(w.ratio / SAME_DISTANCE).round() as i64, w.orbit));
     firsts
@@ -294,6 +291,8 @@ fn window_orbits(host: &Host, survey: &Survey) -> Vec<WindowOrbit> {
 fn shared_rows(interstices: &[Interstice], pairs: &[Shared]) -> Vec<SharedRow> {
     let is_first = |i: usize| i == 0 || interstices[i].orbit != interstices[i - 1].orbit;
     let mut rows: Vec<SharedRow> = Vec::new();
+    // Where the rows of the orbit at hand begin.
+    let mut start = 0;
     for pair in pairs.iter().filter(|p| is_first(p.first)) {
         let row = SharedRow {
             orbit: interstices[pair.first].orbit + 1,
@@ -303,11 +302,13 @@ fn shared_rows(interstices: &[Interstice], pairs: &[Shared]) -> Vec<SharedRow> {
             distance: pair.distance,
             number: 1,
         };
+        if rows.last().is_some_and(|last| last.orbit != row.orbit) {
+            start = rows.len();
+        }
         let same = |r: &&mut SharedRow| {
-            (r.orbit, r.with, r.spheres) == (row.orbit, row.with, row.spheres)
-                && (r.distance - row.distance).abs() < SAME_DISTANCE
+            (r.with, r.spheres) == (row.with, row.spheres) && (r.distance - row.distance).abs() < SAME_DISTANCE
         };
-        match rows.iter_mut().find(same) {
+        match rows[start..].iter_mut().find(same) {
             Some(known) => known.number += 1,
             None => rows.push(row),
         }

@@ -13,6 +13,9 @@ const SAME_RATIO: f64 = 1e-6;
 /// Shape measures that differ by less than this are.
 const SAME_SHAPE: f64 = 5e-3;
 
+/// Rows of a table of places, the largest ones where there are more.
+const MAX_ROWS: usize = 200;
+
 /// The tables.
 pub fn text(holes: &Holes) -> String {
     let mut out = heading(holes);
@@ -86,14 +89,20 @@ fn alike(a: &Orbit, b: &Orbit) -> bool {
 fn places(holes: &Holes, orbits: &[Orbit], classes: bool) -> String {
     let mut groups: Vec<Vec<&Orbit>> = Vec::new();
     for orbit in orbits {
-        match groups.iter_mut().find(|g| alike(g[0], orbit)) {
+        // Orbits stand in order of ratio.
+        let near = |g: &&mut Vec<&Orbit>| (g[0].ratio - orbit.ratio).abs() < SAME_RATIO;
+        match groups.iter_mut().rev().take_while(near).find(|g| alike(g[0], orbit)) {
             Some(group) => group.push(orbit),
             None => groups.push(vec![orbit]),
         }
     }
     let in_angstrom = holes.sphere_angstrom.is_some();
+    let more = groups.len().saturating_sub(MAX_ROWS);
     let rows: Vec<Vec<String>> = groups
         .iter()
+        .rev()
+        .take(MAX_ROWS)
+        .rev()
         .map(|group| {
             let first = group[0];
             let joined = |each: &dyn Fn(&Orbit) -> String| group.iter().map(|o| each(o)).collect::<Vec<_>>().join("+");
@@ -124,7 +133,8 @@ fn places(holes: &Holes, orbits: &[Orbit], classes: bool) -> String {
     columns.extend(["shell", "CN", "per sphere", "ratio"]);
     columns.extend(in_angstrom.then_some("r / Å"));
     columns.extend(["shape", "site symmetry", "in cell", "first at"]);
-    layout(&columns, &rows)
+    let table = layout(&columns, &rows);
+    if more > 0 { format!("{table}and {more} smaller ones; `--json` lists all\n") } else { table }
 }
 
 /// Kind and shell of the interstices of an orbit.
