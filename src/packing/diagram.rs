@@ -126,18 +126,18 @@ type Place = (u32, [i32; 3]);
 
 /// The points of all pieces, each place once, and where each point went.
 fn joined(spheres: &Spheres<'_>, pieces: &[Piece]) -> (Vec<Vertex>, Vec<Place>) {
-    let points: Vec<Fractional> = pieces.iter().flat_map(|p| p.points.iter().copied()).collect();
-    let own: Vec<usize> = pieces.iter().enumerate().flat_map(|(i, p)| std::iter::repeat_n(i, p.points.len())).collect();
+    let points: Vec<Fractional> = pieces.par_iter().flat_map_iter(|p| p.points.iter().copied()).collect();
     let first = places::firsts(spheres.lattice, &points, SAME_POINT * spheres.spacing);
     let mut id = vec![u32::MAX; points.len()];
     let mut vertices: Vec<Vertex> = Vec::with_capacity(points.len() / 4);
     let mut place = Vec::with_capacity(points.len());
-    for (i, point) in points.iter().enumerate() {
+    let own = pieces.iter().enumerate().flat_map(|(own, piece)| std::iter::repeat_n(own, piece.points.len()));
+    for ((i, point), own) in points.iter().enumerate().zip(own) {
         if first[i] as usize == i {
             id[i] = vertices.len() as u32;
-            let centre = spheres.lattice.cartesian(&spheres.centres[own[i]]).0;
+            let centre = spheres.lattice.cartesian(&spheres.centres[own]).0;
             let arm = spheres.lattice.cartesian(point).0 - centre;
-            let clearance = arm.norm() - spheres.radii[own[i]];
+            let clearance = arm.norm() - spheres.radii[own];
             vertices.push(Vertex { position: point.reduced(), clearance });
         }
         let id = id[first[i] as usize];

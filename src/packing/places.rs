@@ -21,14 +21,17 @@ pub fn firsts(lattice: &Lattice, points: &[Fractional], same: f64) -> Vec<u32> {
         points.par_iter().enumerate().map(|(i, p)| (key(boxes(p, &margin).map(|b| b.0)), i as u32)).collect();
     by_box.par_sort_unstable();
     let mut first: Vec<u32> = (0..points.len() as u32).collect();
-    for run in by_box.chunk_by(|a, b| a.0 == b.0) {
-        for (n, &(_, i)) in run.iter().enumerate().skip(1) {
-            let one = |j: &u32| first[*j as usize] == *j && near(lattice, points, i, *j, same);
-            if let Some(j) = run[..n].iter().map(|r| r.1).find(one) {
-                first[i as usize] = j;
-            }
-        }
-    }
+    // Of the points of a box each is held against those before it; the first that is near is, or leads to, the first of all.
+    let inside: Vec<(u32, u32)> = by_box
+        .par_chunk_by(|a, b| a.0 == b.0)
+        .flat_map_iter(|run| {
+            run.iter().enumerate().skip(1).filter_map(move |(n, &(_, i))| {
+                let j = run[..n].iter().map(|r| r.1).find(|j| near(lattice, points, i, *j, same))?;
+                Some((i, j))
+            })
+        })
+        .collect();
+    inside.into_iter().for_each(|(i, j)| first[i as usize] = j);
     let beyond: Vec<(u32, u32)> = (0..points.len())
         .into_par_iter()
         .flat_map_iter(|i| {
