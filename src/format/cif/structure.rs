@@ -141,7 +141,7 @@ fn choose(
             Ok(expanded) => {
                 let fits = alone || {
                     let positions = expanded.structure.positions();
-                    contacts::contacts(lattice, &positions, SHORTEST_CONTACT).is_empty()
+                    contacts::contacts(lattice, &positions, SHORTEST_CONTACT).is_ok_and(|pairs| pairs.is_empty())
                         && formula.is_none_or(|(amounts, z)| formula::fits(&expanded.structure, amounts, z))
                 };
                 if fits {

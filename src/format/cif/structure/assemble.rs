@@ -1,8 +1,8 @@
 //! The cell from its listed sites: images, shared positions, overlaps.
 
-use super::contacts::Contact;
+use super::contacts::{Contact, MAX_NEAR};
 use super::disorder::Relation;
-use super::expand::{MAX_SITES, SHARE_TOLERANCE, near_pairs, orbit, wrapped};
+use super::expand::{MAX_SITES, OVERLAP, SHARE_TOLERANCE, near_pairs, orbit, wrapped};
 use super::labels::Labels;
 use super::report::Report;
 use super::sites::{MAX_SUM, SiteList};
@@ -44,7 +44,11 @@ pub(super) fn expanded(
 ) -> Result<Expanded, Diagnostic> {
     let mut remarks = Vec::new();
     let images = images(lattice, operations, list, &mut remarks, report)?;
-    let pairs = near_pairs(lattice, &images.positions);
+    let pairs = near_pairs(lattice, &images.positions).map_err(|index| {
+        let site = &list.sites[images.row[index] as usize];
+        let text = format!("more than {MAX_NEAR} sites lie within {OVERLAP} Å of `{}`", site.label);
+        report.error("cif::overlap", site.place as usize, text)
+    })?;
     let owner = owners(&images, list, &pairs, &mut remarks, report)?;
     assemble(lattice, images, list, &owner, remarks, report)
 }

@@ -30,6 +30,7 @@ pub(super) enum Relation {
 pub(super) struct Groups<'s> {
     /// Assembly and group.
     all: Vec<(Cow<'s, str>, Cow<'s, str>)>,
+    index: BTreeMap<(Cow<'s, str>, Cow<'s, str>), u32>,
 }
 
 impl<'s> Groups<'s> {
@@ -41,12 +42,10 @@ impl<'s> Groups<'s> {
         });
         let Some(group) = group else { return 0 };
         let key = (assembly.unwrap_or_default(), group);
-        let known = self.all.iter().position(|seen| *seen == key);
-        let index = known.unwrap_or_else(|| {
-            self.all.push(key);
-            self.all.len() - 1
-        });
-        index as u32 + 1
+        *self.index.entry(key).or_insert_with_key(|key| {
+            self.all.push(key.clone());
+            self.all.len() as u32
+        })
     }
 
     fn key(&self, number: u32) -> Option<&(Cow<'s, str>, Cow<'s, str>)> {
