@@ -80,7 +80,7 @@ pub(super) fn check(list: &SiteList<'_>, report: &mut Report<'_, '_>) {
     let full: Vec<usize> = rows().filter(|&row| list.occupant(row).occupancy.is_one()).collect();
     if let Some(&first) = full.first() {
         let labels: Vec<String> =
-            full.iter().take(MAX_LABELS).map(|&row| format!("`{}`", list.sites[row].label)).collect();
+            full.iter().take(MAX_LABELS).map(|&row| format!("`{}`", list.labels.get(row))).collect();
         let more = if full.len() > MAX_LABELS { " and others" } else { "" };
         let text = format!(
             "{}{more} are alternatives of other sites by their disorder groups, but have an occupancy of 1",
