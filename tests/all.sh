@@ -11,6 +11,9 @@ cargo clippy --quiet --all-targets -- -D warnings
 RUSTDOCFLAGS="-D warnings" cargo doc --quiet --no-deps
 
 step "tests"
+note() { [ -n "${!1:-}" ] || echo "$2 not checked: $1 is not set"; }
+note INTERSTICE_CIF_CONFORMANCE "a conformance set of CIF syntax"
+note INTERSTICE_CIF_REAL "a folder of CIFs from elsewhere"
 cargo test --quiet
 
 step "independent readers on the files written"

@@ -11,7 +11,7 @@ use interstice::crystal::{Fractional, Structure};
 use interstice::format::cif::{Description, Mode, Source, parse, read_structures, write};
 use interstice::ordering::Progress;
 use interstice::recipe::{CellChoice, Order, Recipe};
-use interstice::rules::Shells;
+use interstice::rules::{REACH, Shells};
 
 fn run(recipe: &Recipe) -> Built {
     build(recipe, &Progress::default()).unwrap_or_else(|e| panic!("{}: {e}", recipe.composition))
@@ -27,7 +27,8 @@ fn group(structure: &Structure) -> i32 {
 
 /// Coordination numbers of the cations of an element.
 fn coordination(structure: &Structure, element: &str) -> Vec<usize> {
-    let shells = Shells::new(structure);
+    let positions = structure.positions();
+    let shells = Shells::new(structure, &positions);
     let mut numbers: Vec<usize> = (0..structure.sites.len())
         .filter(|i| structure.sites[*i].occupants[0].species.element.symbol() == element)
         .map(|i| shells.coordination[i])
@@ -67,10 +68,12 @@ fn same(a: &Structure, b: &Structure) {
         assert!((interstice::ion::amount::to_f64(&amount) - other).abs() < 1e-6);
     }
     let distances = |s: &Structure| {
-        let shells = Shells::new(s);
+        let positions = s.positions();
+        let shells = Shells::new(s, &positions);
         let mut all: Vec<(String, Vec<i64>)> = (0..s.sites.len())
             .map(|i| {
-                let near = shells.contacts[i].iter().map(|n| (n.distance * 1e3).round() as i64).take(12).collect();
+                let near =
+                    shells.contacts(i, REACH).iter().map(|n| (n.distance * 1e3).round() as i64).take(12).collect();
                 (format!("{:?}", s.sites[i].occupants), near)
             })
             .collect();

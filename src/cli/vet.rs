@@ -1,7 +1,7 @@
 //! `interstice vet`.
 
 use super::{Outcome, Radii, print};
-use interstice::crystal::symmetry::{TOLERANCE, symmetrise};
+use interstice::crystal::symmetry::{MAX_SEARCHED, TOLERANCE, symmetrise};
 use interstice::crystal::{Occupant, Structure};
 use interstice::error::Error;
 use interstice::format::cif::{self, Diagnostic, Mode, ReadStructure, Source, parse, read_structures};
@@ -156,16 +156,14 @@ fn judged(path: &str, read: &mut ReadStructure, arguments: &Arguments) -> Vetted
     };
     let terms = Terms { limits, radii: arguments.radii.into(), promised: &[] };
     let findings = judge(&read.structure, &terms);
+    let positions = read.structure.positions();
+    let searched = read.structure.sites.len() <= MAX_SEARCHED;
     Vetted {
         path: path.into(),
         block: read.block.clone(),
         sites: read.structure.sites.len(),
-        space_group: symmetrise(&read.structure, TOLERANCE).ok().map(|s| s.group.number),
-        shortest: Shells::new(&read.structure)
-            .contacts
-            .iter()
-            .filter_map(|near| near.first().map(|n| n.distance))
-            .min_by(f64::total_cmp),
+        space_group: searched.then(|| symmetrise(&read.structure, TOLERANCE).ok().map(|s| s.group.number)).flatten(),
+        shortest: Shells::new(&read.structure, &positions).nearest.into_iter().flatten().min_by(f64::total_cmp),
         charges_assigned,
         warnings: read.warnings.clone(),
         labels: findings.iter().map(|f| labels(read, f)).collect(),

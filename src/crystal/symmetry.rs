@@ -3,6 +3,7 @@
 //! Operations act on fractional coordinates, x′ = W x + w. The standard setting is moyo's: origin choice 2,
 //! hexagonal axes for rhombohedral groups, unique axis b.
 
+use super::neighbours::NeighbourList;
 use super::transformation::write_terms;
 use super::{Fractional, Lattice, Occupant, Site, Structure, setting};
 use crate::ion::Amount;
@@ -203,6 +204,13 @@ pub struct Symmetrised {
     pub tolerance: f64,
 }
 
+/// Largest cell whose symmetry is worth a search, in sites: the search for pure translations compares all pairs and
+/// takes seconds here.
+pub const MAX_SEARCHED: usize = 10_000;
+
+/// Symmetrising moves a site by less than this, Å.
+const REFINEMENT: f64 = 1.0;
+
 /// Operations of the cell that map every position onto one of the same kind within `tolerance` (Å), in the basis of
 /// the **input** cell, and for each position the first position of its orbit.
 ///
@@ -261,13 +269,16 @@ pub fn symmetrise(structure: &Structure, tolerance: f64) -> Result<Symmetrised, 
         dataset.std_linear.try_inverse().ok_or_else(|| not_found(tolerance, &"singular transformation"))?;
 
     let mut orbits = Vec::new();
+    let near = NeighbourList::new(&lattice, &standard, REFINEMENT);
     for input_site in (0..positions.len()).filter(|&i| dataset.orbits[i] == i) {
         let rough = Fractional(to_standard * (positions[input_site].0 - dataset.std_origin_shift));
-        let refined = (0..standard.len())
-            .filter(|&k| dataset.std_cell.numbers[k] == kinds[input_site])
-            .min_by(|&p, &q| lattice.distance(&rough, &standard[p]).total_cmp(&lattice.distance(&rough, &standard[q])))
-            .ok_or_else(|| not_found(tolerance, &"a site was lost on standardising"))?;
-        let start = if keep { positions[input_site] } else { standard[refined] };
+        let refined = || {
+            let all = near.around(&rough, REFINEMENT);
+            let alike = all.iter().filter(|n| dataset.std_cell.numbers[n.index] == kinds[input_site]);
+            let nearest = alike.min_by(|p, q| p.distance.total_cmp(&q.distance));
+            nearest.map(|n| standard[n.index]).ok_or_else(|| not_found(tolerance, &"a site was lost on standardising"))
+        };
+        let start = if keep { positions[input_site] } else { refined()? };
         let exact = on_symmetry_element(&lattice, &group.operations, &start);
         let images = orbit(&lattice, &group.operations, &exact, MIN_SEPARATION);
         let position = images.iter().copied().min_by(preferred).unwrap_or(exact);

@@ -1,5 +1,6 @@
 //! What the rules say of a structure that was read.
 
+use crate::crystal::symmetry::MAX_SEARCHED;
 use crate::format::cif::{Diagnostic, ReadStructure};
 use crate::rules::Finding;
 use serde::Serialize;
@@ -34,7 +35,11 @@ pub fn labels(read: &ReadStructure, finding: &Finding) -> Vec<String> {
 
 /// What people read.
 pub fn text(vetted: &Vetted) -> String {
-    let group = vetted.space_group.map_or("space group not found".to_string(), |n| format!("space group {n}"));
+    let group = match vetted.space_group {
+        Some(number) => format!("space group {number}"),
+        None if vetted.sites > MAX_SEARCHED => format!("space group not searched (more than {MAX_SEARCHED} sites)"),
+        None => "space group not found".to_owned(),
+    };
     let mut out = format!("{}: block {}, {} sites in the cell, {group}\n", vetted.path, vetted.block, vetted.sites);
     for warning in &vetted.warnings {
         out += &format!("  warning: {}\n", warning.one_line(&vetted.path));

@@ -16,7 +16,11 @@ pub(super) fn judge(structure: &Structure, shells: &Shells, terms: &Terms<'_>) -
     let radii: Vec<Option<f64>> =
         (0..structure.sites.len()).map(|idx| site_radius(structure, shells, idx, terms)).collect();
     let mut worst: [Option<(f64, Finding)>; 3] = [None, None, None];
-    for (i, near) in shells.contacts.iter().enumerate() {
+    // No limit is longer than this.
+    let factors = [terms.limits.cation_anion, terms.limits.anion_anion, terms.limits.cation_cation];
+    let longest = radii.iter().flatten().copied().fold(0.0, f64::max) * 2.0 * factors.into_iter().fold(0.0, f64::max);
+    for i in 0..structure.sites.len() {
+        let near = if radii[i].is_some() { shells.contacts(i, longest) } else { Vec::new() };
         for n in near.iter().filter(|n| n.index >= i) {
             let (rule, factor, source) = match (shells.signs[i], shells.signs[n.index]) {
                 (1, 1) => (Rule::CationCation, terms.limits.cation_cation, OWN_LIMIT),

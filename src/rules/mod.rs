@@ -128,7 +128,8 @@ pub struct Terms<'a> {
 
 /// Every finding of every rule, in order of rule; never stops at the first.
 pub fn judge(structure: &Structure, terms: &Terms<'_>) -> Vec<Finding> {
-    let shells = Shells::new(structure);
+    let positions = structure.positions();
+    let shells = Shells::new(structure, &positions);
     let mut findings = Vec::new();
     findings.extend(neutrality::judge(structure));
     findings.extend(occupancy::judge(structure));

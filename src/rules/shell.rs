@@ -1,7 +1,7 @@
 //! The first coordination shell of every site: which ions of opposite sign surround it.
 
 use crate::crystal::neighbours::{Neighbour, NeighbourList};
-use crate::crystal::{Site, Structure};
+use crate::crystal::{Fractional, Site, Structure};
 use crate::ion::amount::to_f64;
 
 /// An ion of opposite sign belongs to the first shell when its distance is at most this multiple of the nearest's.
@@ -29,31 +29,35 @@ pub(super) fn filled(site: &Site) -> f64 {
 }
 
 /// Contacts and first shells of all sites of a structure.
-pub struct Shells {
-    /// For each site its neighbours within [`REACH`], nearest first.
-    pub contacts: Vec<Vec<Neighbour>>,
+pub struct Shells<'a> {
+    list: NeighbourList<'a>,
+    /// Distance of the nearest site to each within [`REACH`], Å.
+    pub nearest: Vec<Option<f64>>,
     /// +1 cation, −1 anion, 0 neutral or unknown, by site.
     pub signs: Vec<i8>,
     /// For each site the number of neighbours in its first shell.
     pub coordination: Vec<usize>,
 }
 
-impl Shells {
-    /// Linear in the number of sites.
-    pub fn new(structure: &Structure) -> Self {
-        let positions = structure.positions();
-        let list = NeighbourList::new(&structure.lattice, &positions, REACH);
-        let contacts: Vec<_> = (0..positions.len()).map(|idx| list.of(idx, REACH)).collect();
+impl<'a> Shells<'a> {
+    /// Linear in the number of sites. `positions` are those of the structure.
+    pub fn new(structure: &'a Structure, positions: &'a [Fractional]) -> Self {
+        let list = NeighbourList::new(&structure.lattice, positions, REACH);
         let signs: Vec<i8> = structure.sites.iter().map(sign).collect();
-        let coordination = contacts
-            .iter()
-            .zip(&signs)
-            .map(|(near, sign)| {
-                let opposite = || near.iter().filter(|n| signs[n.index] * sign < 0);
-                let nearest = opposite().next().map_or(0.0, |n| n.distance);
-                opposite().take_while(|n| n.distance <= nearest * SHELL_FACTOR).count()
-            })
-            .collect();
-        Self { contacts, signs, coordination }
+        let shells = signs.iter().enumerate().map(|(idx, sign)| {
+            // Not kept: a large cell has tens of contacts a site.
+            let near = list.of(idx, REACH);
+            let opposite = || near.iter().filter(|n| signs[n.index] * sign < 0);
+            let first = opposite().next().map_or(0.0, |n| n.distance);
+            let coordination = opposite().take_while(|n| n.distance <= first * SHELL_FACTOR).count();
+            (near.first().map(|n| n.distance), coordination)
+        });
+        let (nearest, coordination) = shells.unzip();
+        Self { list, nearest, signs, coordination }
+    }
+
+    /// Neighbours of a site within a radius of at most [`REACH`] (Å), nearest first.
+    pub fn contacts(&self, idx: usize, radius: f64) -> Vec<Neighbour> {
+        self.list.of(idx, radius.min(REACH))
     }
 }

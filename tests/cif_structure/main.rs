@@ -8,6 +8,7 @@ mod matcher;
 #[allow(dead_code, reason = "shared with another test")]
 mod prototypes;
 mod real;
+mod symbols;
 
 use interstice::crystal::{Fractional, Lattice, Occupant, Parameters, Site, Structure};
 use interstice::format::cif::structure::{ReadStructure, read_structures};

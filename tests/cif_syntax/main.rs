@@ -4,5 +4,6 @@
 
 mod conformance;
 mod gallery;
+mod hostile;
 mod own;
 mod round_trip;

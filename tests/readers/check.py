@@ -77,13 +77,52 @@ def with_spglib(path, small, atoms, number):
     import spglib
 
     if any(a.occ < 1 for a in atoms):
-        return
+        return None
     lattice = numpy.array(small.cell.orth.mat.tolist()).T
     positions = [[a.fract.x, a.fract.y, a.fract.z] for a in atoms]
     kinds = [a.element.atomic_number * 20 + int(a.charge) for a in atoms]
-    found = spglib.get_symmetry_dataset((lattice, positions, kinds), symprec=1e-3)
+    cell = (lattice, positions, kinds)
+    found = spglib.get_symmetry_dataset(cell, symprec=1e-3)
     if found.number != number and number != 1:
         fail(path, f"spglib finds space group {found.number}, the file says {number}")
+    return found.number, spectrum(spglib.standardize_cell(cell, to_primitive=True, no_idealize=True, symprec=1e-3))
+
+
+REACH = 5.0  # A
+
+
+def spectrum(cell):
+    """Distances up to REACH in a primitive cell, sorted, for each pair of kinds; None for a large cell."""
+    import numpy
+
+    lattice, positions, kinds = cell
+    if len(kinds) > 250:
+        return None
+    n = numpy.ceil(REACH * numpy.linalg.norm(numpy.linalg.inv(lattice), axis=0)).astype(int) + 1
+    shifts = numpy.array(numpy.meshgrid(*[range(-k, k + 1) for k in n])).reshape(3, -1).T
+    found = {}
+    for position, kind in zip(positions, kinds):
+        lengths = numpy.linalg.norm((positions - position + shifts[:, None, :]) @ lattice, axis=2)
+        for other in set(kinds):
+            near = lengths[:, kinds == other]
+            found.setdefault((kind, other), []).extend(near[(near > 1e-3) & (near < REACH)])
+    return {pair: numpy.sort(near) for pair, near in found.items()}
+
+
+def compare(path, ours, twin):
+    """Two ways of writing one cell: the same group and the same distances, as spglib has them. Whether both were seen."""
+    if ours is None or twin is None or ours[1] is None or twin[1] is None:
+        return False
+    if ours[0] != twin[0]:
+        fail(path, f"spglib finds space group {ours[0]}, and {twin[0]} in the other way of writing the cell")
+    for pair in set(ours[1]) | set(twin[1]):
+        for some, others in [(ours[1], twin[1]), (twin[1], ours[1])]:
+            some, others = some.get(pair, []), others.get(pair, [])
+            inside = [d for d in some if d < REACH - 0.01]
+            if len(others) < len(inside) or any(abs(d - e) > 2e-3 for d, e in zip(inside, others)):
+                fail(path, f"the distances of {pair} differ from those in the other way of writing the cell")
+                return True
+    return True
 
 
 def with_pycifrw(path, small):
@@ -124,19 +163,24 @@ def main():
         print("not checked against the core dictionary: INTERSTICE_CIF_DICTIONARY is not set")
     elif shutil.which("ddlm_validate") is None:
         missing("ddlm_validate")
+    standard = {}
     for path in paths:
         said = said_by_us(binary, path)
         if said is None:
             continue
         small, atoms, number = with_gemmi(path, said)
-        with_spglib(path, small, atoms, number)
+        standard[path] = with_spglib(path, small, atoms, number)
         with_pycifrw(path, small)
         with_command(path, ["cifparse", "-c", "-q"], "cifparse")
         if dictionary:
             command = ["ddlm_validate", "--report-deprecated", "-d", f"{dictionary}/cif_core.dic", "-I", dictionary]
             with_command(path, command, "ddlm_validate")
+    # The same cells in P 1 lie in a folder, or bear a name, with `-p1`.
+    twins = [(path, path.replace("-p1", "")) for path in paths if "-p1" in path]
+    pairs = sum(compare(path, standard.get(path), standard.get(twin)) for path, twin in twins)
     for failure in failures:
         print("FAILED", failure)
+    print(f"{pairs} cells are the same in P 1 and in their space group")
     print(f"{len(paths)} files opened by gemmi, PyCifRW and spglib, {len(failures)} disagreements")
     sys.exit(1 if failures else 0)
 

@@ -68,6 +68,8 @@ struct Parser<'s> {
     stem: String,
     blocks: Vec<Block<'s>>,
     codes: HashSet<String>,
+    /// For a code that was taken, the number to try next.
+    next_number: HashMap<String, usize>,
     block: Option<Container<'s>>,
     frame: Option<Container<'s>>,
     /// Names and codes over their limits: the first, its kind and length, and how many.
@@ -87,6 +89,7 @@ impl<'s> Parser<'s> {
             stem: source.stem(),
             blocks: Vec::new(),
             codes: HashSet::new(),
+            next_number: HashMap::new(),
             block: None,
             frame: None,
             too_long: None,
@@ -190,10 +193,18 @@ impl<'s> Parser<'s> {
     }
 
     /// `wanted`, with a number behind it if a block bears that code already.
-    fn unused_code(&self, wanted: &str) -> String {
-        let numbered = (2..).map(|n| format!("{wanted}_{n}"));
-        let mut candidates = std::iter::once(wanted.to_owned()).chain(numbered);
-        candidates.find(|code| !self.codes.contains(folded(code).as_ref())).unwrap_or_default()
+    fn unused_code(&mut self, wanted: &str) -> String {
+        if !self.codes.contains(folded(wanted).as_ref()) {
+            return wanted.to_owned();
+        }
+        let number = self.next_number.entry(folded(wanted).into_owned()).or_insert(2);
+        loop {
+            let code = format!("{wanted}_{number}");
+            *number += 1;
+            if !self.codes.contains(folded(&code).as_ref()) {
+                return code;
+            }
+        }
     }
 
     fn end_of_block(&mut self, end: usize) {

@@ -10,9 +10,9 @@ use super::source::Version;
 use super::value::Kind;
 use crate::error::counted;
 use nom::branch::alt;
-use nom::bytes::complete::{tag, tag_no_case, take_till, take_till1, take_while};
+use nom::bytes::complete::{tag, tag_no_case, take_till, take_till1};
 use nom::character::complete::char;
-use nom::combinator::{map, opt, peek, recognize, rest, verify};
+use nom::combinator::{map, peek, recognize, rest, verify};
 use nom::sequence::{preceded, terminated};
 use nom::{IResult, Parser};
 
@@ -231,8 +231,8 @@ enum Closing {
 }
 
 /// `quoted-string`. In 1.1 (table 2.2.7.1 (d), paragraph 15) it ends at its delimiter followed by white space, in 2.0 at
-/// its delimiter. `may_end` tells whether a string may end at an offset.
-fn quoted_string(bytes: &[u8], may_end: impl Fn(usize) -> bool, version: Version) -> Closing {
+/// its delimiter. `may_end` tells whether a string may end at an offset; `is_hopeless`, that none on this line may.
+fn quoted_string(bytes: &[u8], mut may_end: impl FnMut(usize) -> bool, version: Version, is_hopeless: bool) -> Closing {
     let mut first = None;
     let mut at = 1;
     while let Some(&b) = bytes.get(at).filter(|b| !is_line_end(**b)) {
@@ -241,6 +241,7 @@ fn quoted_string(bytes: &[u8], may_end: impl Fn(usize) -> bool, version: Version
                 (true, None) => return Closing::At(at),
                 (true, Some(_)) if version == Version::Cif20 => return Closing::Embedded(at),
                 (true, Some(_)) => return Closing::At(at),
+                (false, _) if is_hopeless && version == Version::Cif20 => return Closing::At(at),
                 (false, _) => first = first.or(Some(at)),
             }
         }
@@ -276,12 +277,26 @@ pub(super) struct Lexer<'s> {
     pub depth: usize,
     /// Whether the next token is to be the key of a table.
     pub expects_key: bool,
+    /// Where the line that was last asked for ends, and whether a text field begins after it: a line may hold many
+    /// strings.
+    line_end: Option<(usize, bool)>,
+    /// By quote and surroundings: up to where no string can end by the rules, so that a long line is searched once.
+    hopeless_before: [usize; 8],
     pub faults: Faults,
 }
 
 impl<'s> Lexer<'s> {
     pub fn new(text: &'s str, version: Version) -> Self {
-        Self { text, at: 0, version, depth: 0, expects_key: false, faults: Faults::default() }
+        Self {
+            text,
+            at: 0,
+            version,
+            depth: 0,
+            expects_key: false,
+            line_end: None,
+            hopeless_before: [0; 8],
+            faults: Faults::default(),
+        }
     }
 
     /// The next token.
@@ -384,11 +399,18 @@ impl<'s> Lexer<'s> {
 
     fn quoted(&mut self, start: usize) -> Token {
         let bytes = &self.text.as_bytes()[start..];
-        let follows = |at: usize| self.may_follow(start + at);
         let class = Class::Value(Kind::Quoted);
-        match quoted_string(bytes, follows, self.version) {
+        // What decides where a string may end.
+        let rule = usize::from(bytes[0] == b'"') + 2 * usize::from(self.depth > 0) + 4 * usize::from(self.expects_key);
+        let is_hopeless = self.hopeless_before[rule] > start;
+        let version = self.version;
+        match quoted_string(bytes, |at| self.may_follow(start + at), version, is_hopeless) {
             Closing::At(at) => {
                 let end = start + at + 1;
+                if version == Version::Cif20 && !is_hopeless && !self.may_follow(end) {
+                    let line = bytes.iter().position(|b| is_line_end(*b));
+                    self.hopeless_before[rule] = start + line.unwrap_or(bytes.len());
+                }
                 self.check_glue(end);
                 self.finish(class, start, end, (start + 1, start + at))
             }
@@ -464,16 +486,29 @@ impl<'s> Lexer<'s> {
 
     /// Whether a value may end here: before white space; inside a list or table before a closing bracket, and after a
     /// key before its colon; in 2.0 before a comment too if a text field comes next (`wspace-data-value`).
-    fn may_follow(&self, end: usize) -> bool {
+    fn may_follow(&mut self, end: usize) -> bool {
         let rest = &self.text[end..];
         match rest.as_bytes().first() {
             None => true,
             Some(b) if is_blank(*b) => true,
             Some(b']' | b'}') => self.depth > 0,
             Some(b':') => self.expects_key,
-            Some(b'#') => self.version == Version::Cif20 && comment_before_text_field(rest),
+            Some(b'#') => self.version == Version::Cif20 && self.comment_before_text_field(end),
             Some(_) => false,
         }
+    }
+
+    /// `[ comment ], text-field`, with a comment at an offset.
+    fn comment_before_text_field(&mut self, at: usize) -> bool {
+        if let Some((end, is_field)) = self.line_end.filter(|(end, _)| at <= *end) {
+            return is_field && at < end;
+        }
+        let bytes = self.text.as_bytes();
+        let end = bytes[at..].iter().position(|b| is_line_end(*b)).map_or(bytes.len(), |length| at + length);
+        let after = bytes[end..].iter().position(|b| !is_line_end(*b));
+        let is_field = after.is_some_and(|blank| blank > 0 && bytes[end + blank] == b';');
+        self.line_end = Some((end, is_field));
+        is_field
     }
 
     fn check_glue(&mut self, end: usize) {
@@ -487,12 +522,4 @@ impl<'s> Lexer<'s> {
             });
         }
     }
-}
-
-/// `[ comment ], text-field`.
-fn comment_before_text_field(input: &str) -> bool {
-    let line_end = take_while(is_line_end_char);
-    let semicolon = opt(char(';'));
-    let parsed: Parsed<'_, _> = (comment, line_end, semicolon).parse(input);
-    parsed.is_ok_and(|(_, (_, ends, semicolon))| !ends.is_empty() && semicolon.is_some())
 }

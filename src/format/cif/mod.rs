@@ -12,7 +12,7 @@ pub mod emit;
 mod grammar;
 mod lexer;
 mod names;
-mod nested;
+pub mod nested;
 pub mod number;
 mod protocol;
 pub mod source;

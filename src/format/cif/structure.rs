@@ -98,7 +98,7 @@ pub fn read_block(document: &Document<'_>, block: &Block<'_>) -> Result<ReadStru
     }
 
     let (operations, expanded) = choose(candidates, &lattice, &list, amounts.as_ref().zip(z), &mut report)?;
-    let Expanded { structure, labels, remarks } = expanded;
+    let Expanded { structure, rows, remarks } = expanded;
     for (code, place, text) in remarks {
         report.warn(code, place, text);
     }
@@ -111,7 +111,7 @@ pub fn read_block(document: &Document<'_>, block: &Block<'_>) -> Result<ReadStru
     };
     Ok(ReadStructure {
         structure,
-        labels,
+        labels: Labels::new(list.labels, rows),
         block: block.code().to_owned(),
         name: known(&["_chemical_name_common", "_chemical_name_mineral", "_chemical_name_systematic"]),
         stated_group,
@@ -141,7 +141,7 @@ fn choose(
             Ok(expanded) => {
                 let fits = alone || {
                     let positions = expanded.structure.positions();
-                    contacts::contacts(lattice, &positions, SHORTEST_CONTACT).is_empty()
+                    contacts::contacts(lattice, &positions, SHORTEST_CONTACT).is_ok_and(|pairs| pairs.is_empty())
                         && formula.is_none_or(|(amounts, z)| formula::fits(&expanded.structure, amounts, z))
                 };
                 if fits {

@@ -1,9 +1,9 @@
 //! Space-group symbols as files spell them, resolved to the settings of International Tables.
 //!
 //! The settings are the 530 of moyo's table (International Tables A, as numbered by spglib). Old and careless
-//! spellings are taken: no blanks, underscores, `P2(1)/c`, `F m 3 m` for `F m -3 m` (before the 1995 edition of the
-//! Tables the bar was left out), `C m c a` for `C m c e` (the double glide `e` came in 1992: de Wolff et al., Acta
-//! Cryst. A48, 727), suffixes `:1 :2 :H :R`, and `S`/`Z` or `H`/`R` at the end (common practice, no source).
+//! spellings are taken: no blanks, underscores, `P2(1)/c`, `F m 3 m` for `F m -3 m` (before the editions of the 1990s
+//! the bar was left out; the date is from memory), `C m c a` for `C m c e` (the double glide `e` came in 1992: de Wolff
+//! et al., Acta Cryst. A48, 727; from memory), suffixes `:1 :2 :H :R`, and `S`/`Z` or `H`/`R` at the end (common practice, no source).
 
 use super::structure::operations::{Group, close};
 use crate::crystal::symmetry::Operation;

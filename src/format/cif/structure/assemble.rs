@@ -1,9 +1,8 @@
 //! The cell from its listed sites: images, shared positions, overlaps.
 
-use super::contacts::Contact;
+use super::contacts::{Contact, MAX_NEAR};
 use super::disorder::Relation;
-use super::expand::{MAX_SITES, SHARE_TOLERANCE, near_pairs, orbit, wrapped};
-use super::labels::Labels;
+use super::expand::{MAX_SITES, OVERLAP, SHARE_TOLERANCE, near_pairs, orbit};
 use super::report::Report;
 use super::sites::{MAX_SUM, SiteList};
 use crate::crystal::symmetry::Operation;
@@ -12,6 +11,7 @@ use crate::format::cif::diagnostic::Diagnostic;
 use crate::ion::Amount;
 use crate::ion::amount::to_f64;
 use num_traits::One;
+use std::borrow::Cow;
 use std::collections::{BTreeMap, BTreeSet};
 use std::sync::Arc;
 
@@ -24,14 +24,14 @@ type Remark = (&'static str, usize, String);
 /// All sites of the cell, and the remarks on them.
 pub(super) struct Expanded {
     pub structure: Structure,
-    pub labels: Labels,
+    /// For each site its row in the list.
+    pub rows: Vec<u32>,
     pub remarks: Vec<Remark>,
 }
 
 /// Positions of the cell, and for each the row of the list that it is an image of.
-#[derive(Default)]
-struct Images {
-    positions: Vec<Fractional>,
+struct Images<'l> {
+    positions: Cow<'l, [Fractional]>,
     row: Vec<u32>,
 }
 
@@ -44,49 +44,53 @@ pub(super) fn expanded(
 ) -> Result<Expanded, Diagnostic> {
     let mut remarks = Vec::new();
     let images = images(lattice, operations, list, &mut remarks, report)?;
-    let pairs = near_pairs(lattice, &images.positions);
+    let pairs = near_pairs(lattice, &images.positions).map_err(|index| {
+        let row = images.row[index] as usize;
+        let text = format!("more than {MAX_NEAR} sites lie within {OVERLAP} Å of `{}`", list.labels.get(row));
+        report.error("cif::overlap", list.sites[row].place as usize, text)
+    })?;
     let owner = owners(&images, list, &pairs, &mut remarks, report)?;
     assemble(lattice, images, list, &owner, remarks, report)
 }
 
-fn images(
+fn images<'l>(
     lattice: &Lattice,
     operations: &[Operation],
-    list: &SiteList<'_>,
+    list: &'l SiteList<'_>,
     remarks: &mut Vec<Remark>,
     report: &Report<'_, '_>,
-) -> Result<Images, Diagnostic> {
+) -> Result<Images<'l>, Diagnostic> {
     if operations.len() == 1 {
-        let positions = list.sites.iter().map(|site| wrapped(&site.position)).collect();
+        let positions = Cow::Borrowed(&list.positions[..]);
         return Ok(Images { positions, row: (0..list.sites.len() as u32).collect() });
     }
-    let mut images = Images::default();
-    for (row, site) in list.sites.iter().enumerate() {
-        let Some(orbit) = orbit(lattice, operations, &site.position) else {
+    let (mut positions, mut rows) = (Vec::new(), Vec::new());
+    for (row, (site, position)) in list.sites.iter().zip(&list.positions).enumerate() {
+        let Some(orbit) = orbit(lattice, operations, position) else {
             let text = format!(
                 "`{}` lies near a symmetry element, but not near enough to tell whether on it; give its coordinates with more digits",
-                site.label
+                list.labels.get(row)
             );
             return Err(report.error("cif::special-position", site.place as usize, text));
         };
         if orbit.shift > QUIET_SHIFT {
-            let text = format!("`{}` is moved by {:.4} Å onto its symmetry element", site.label, orbit.shift);
+            let text = format!("`{}` is moved by {:.4} Å onto its symmetry element", list.labels.get(row), orbit.shift);
             remarks.push(("cif::special-position", site.place as usize, text));
         }
-        images.positions.extend(orbit.positions);
-        images.row.resize(images.positions.len(), row as u32);
-        if images.positions.len() > MAX_SITES {
+        positions.extend(orbit.positions);
+        rows.resize(positions.len(), row as u32);
+        if positions.len() > MAX_SITES {
             let text = format!("the cell would hold more than {MAX_SITES} sites");
             return Err(report.error("cif::sites", site.place as usize, text));
         }
     }
-    Ok(images)
+    Ok(Images { positions: positions.into(), row: rows })
 }
 
 /// For each position that shares another's the first position there; remarks on shared and split sites; an error for
 /// sites that overlap.
 fn owners(
-    images: &Images,
+    images: &Images<'_>,
     list: &SiteList<'_>,
     pairs: &[Contact],
     remarks: &mut Vec<Remark>,
@@ -103,6 +107,7 @@ fn owners(
     for &(i, j, distance) in pairs {
         let rows = [i, j].map(|at| images.row[at] as usize);
         let [first, second] = rows.map(|row| &list.sites[row]);
+        let label = list.labels.get(rows[0]);
         let [share, other] = rows.map(|row| list.occupant(row).occupancy);
         let together = owner.get(&i).unwrap_or(&i) == owner.get(&j).unwrap_or(&j);
         let relation = list.groups.relation(first.group, second.group, rows[0] == rows[1]);
@@ -110,10 +115,10 @@ fn owners(
             continue;
         }
         if !together && share + other > most {
-            let other_label = if rows[0] == rows[1] { "an image of it".into() } else { format!("`{}`", second.label) };
+            let other_label =
+                if rows[0] == rows[1] { "an image of it".into() } else { format!("`{}`", list.labels.get(rows[1])) };
             let text = format!(
-                "`{}` and {other_label} are {distance:.3} Å apart with occupancies {} and {}; no two atoms can be that near",
-                first.label,
+                "`{label}` and {other_label} are {distance:.3} Å apart with occupancies {} and {}; no two atoms can be that near",
                 to_f64(&share),
                 to_f64(&other)
             );
@@ -125,8 +130,9 @@ fn owners(
                 (false, Relation::Together) => "are in one disorder group, but cannot both be there",
                 (false, _) => "are taken as alternatives of one atom",
             };
-            let other_label = if rows[0] == rows[1] { "an image of it".into() } else { format!("`{}`", second.label) };
-            let text = format!("`{}` and {other_label} are {distance:.3} Å apart and {how}", first.label);
+            let other_label =
+                if rows[0] == rows[1] { "an image of it".into() } else { format!("`{}`", list.labels.get(rows[1])) };
+            let text = format!("`{label}` and {other_label} are {distance:.3} Å apart and {how}");
             remarks.push(("cif::shared", second.place as usize, text));
         }
     }
@@ -135,7 +141,7 @@ fn owners(
 
 fn assemble(
     lattice: &Lattice,
-    images: Images,
+    images: Images<'_>,
     list: &SiteList<'_>,
     owner: &BTreeMap<usize, usize>,
     mut remarks: Vec<Remark>,
@@ -152,7 +158,7 @@ fn assemble(
     let mut sites = Vec::with_capacity(n_sites);
     let mut row_of_site = Vec::with_capacity(n_sites);
     let mut said = BTreeSet::new();
-    for (index, (position, row)) in images.positions.into_iter().zip(images.row).enumerate() {
+    for (index, (position, row)) in images.positions.iter().zip(images.row).enumerate() {
         if owner.contains_key(&index) {
             continue;
         }
@@ -167,11 +173,10 @@ fn assemble(
                 together(rows, list, remark, report)?
             }
         };
-        sites.push(Site { position, occupants });
+        sites.push(Site { position: *position, occupants });
         row_of_site.push(row);
     }
-    let labels = Labels::new(&list.sites, row_of_site);
-    Ok(Expanded { structure: Structure { lattice: lattice.clone(), sites }, labels, remarks })
+    Ok(Expanded { structure: Structure { lattice: lattice.clone(), sites }, rows: row_of_site, remarks })
 }
 
 /// The occupants of one position that several rows share.
@@ -193,7 +198,7 @@ fn together(
     let first = &list.sites[rows[0]];
     if total > Amount::new(MAX_SUM.0, MAX_SUM.1) {
         let labels: BTreeSet<usize> = rows.iter().copied().collect();
-        let labels: Vec<_> = labels.iter().map(|&row| format!("`{}`", list.sites[row].label)).collect();
+        let labels: Vec<_> = labels.iter().map(|&row| format!("`{}`", list.labels.get(row))).collect();
         let text = format!(
             "the occupancies of {} on one position add up to {:.4}; they must not exceed 1, and of sites that are \
              images of each other only one is listed",
@@ -210,7 +215,7 @@ fn together(
         }
         let text = format!(
             "the occupancies on the position of `{}` add up to {:.4} and are taken as 1 in all",
-            first.label,
+            list.labels.get(rows[0]),
             to_f64(&total)
         );
         remark(("cif::occupancy", first.place as usize, text));

@@ -5,13 +5,19 @@ use crate::crystal::{Fractional, Lattice};
 /// Most boxes along one axis.
 const MAX_BOXES: usize = 256;
 
+/// Most positions that may lie near one: more than the alternatives and occupants of any site.
+pub const MAX_NEAR: usize = 200;
+
 /// Two positions (indices in ascending order) and their distance, Å.
 pub type Contact = (usize, usize, f64);
 
 /// All pairs of positions, each in [0, 1), that lie within `radius` (Å) of each other, periodic images included, in
 /// order of their indices. In a cell so flat that a pair could meet through two of its walls, the radius is reduced to
 /// what the nearest images tell.
-pub fn contacts(lattice: &Lattice, positions: &[Fractional], radius: f64) -> Vec<Contact> {
+///
+/// # Errors
+/// The index of a position that more than [`MAX_NEAR`] others lie near: no structure, and too many pairs to hold.
+pub fn contacts(lattice: &Lattice, positions: &[Fractional], radius: f64) -> Result<Vec<Contact>, usize> {
     let spacings = lattice.spacings();
     let radius = spacings.into_iter().fold(radius, |r, spacing| r.min(0.49 * spacing));
     // About one position a box, but no box narrower than the radius.
@@ -21,6 +27,7 @@ pub fn contacts(lattice: &Lattice, positions: &[Fractional], radius: f64) -> Vec
     let (starts, order) = sorted_into_boxes(positions, boxes);
     let mut found = Vec::new();
     for &i in &order {
+        let before = found.len();
         let p = positions[i as usize].0;
         // Boxes that the sphere touches, along each axis: its own and at most one on either side.
         let range = [0, 1, 2].map(|axis| {
@@ -45,12 +52,15 @@ pub fn contacts(lattice: &Lattice, positions: &[Fractional], radius: f64) -> Vec
                     }
                 }
             }
+            if found.len() - before > MAX_NEAR {
+                return Err(i as usize);
+            }
         }
     }
     found.sort_by_key(|(i, j, _)| (*i, *j));
     // A cell one box wide is seen from both sides.
     found.dedup_by_key(|(i, j, _)| (*i, *j));
-    found
+    Ok(found)
 }
 
 /// A difference of two fractions in [0, 1), brought to the nearest whole number.
@@ -129,8 +139,19 @@ mod tests {
                     }
                 }
             }
-            let found: Vec<_> = contacts(&lattice, &positions, radius).iter().map(|(i, j, _)| (*i, *j)).collect();
+            let found: Vec<_> =
+                contacts(&lattice, &positions, radius).unwrap().iter().map(|(i, j, _)| (*i, *j)).collect();
             assert_eq!(found, brute, "{n} positions");
         }
+    }
+
+    #[test]
+    fn a_heap_of_positions_is_refused() {
+        let lattice =
+            Lattice::from_parameters(&Parameters { a: 9.0, b: 9.0, c: 9.0, alpha: 90.0, beta: 90.0, gamma: 90.0 })
+                .unwrap();
+        let heap = |n| vec![Fractional::new(0.5, 0.5, 0.5); n];
+        assert_eq!(contacts(&lattice, &heap(50), 0.5).unwrap().len(), 50 * 49 / 2);
+        assert_eq!(contacts(&lattice, &heap(100_000), 0.5), Err(0));
     }
 }

@@ -30,6 +30,7 @@ pub(super) enum Relation {
 pub(super) struct Groups<'s> {
     /// Assembly and group.
     all: Vec<(Cow<'s, str>, Cow<'s, str>)>,
+    index: BTreeMap<(Cow<'s, str>, Cow<'s, str>), u32>,
 }
 
 impl<'s> Groups<'s> {
@@ -41,12 +42,10 @@ impl<'s> Groups<'s> {
         });
         let Some(group) = group else { return 0 };
         let key = (assembly.unwrap_or_default(), group);
-        let known = self.all.iter().position(|seen| *seen == key);
-        let index = known.unwrap_or_else(|| {
-            self.all.push(key);
-            self.all.len() - 1
-        });
-        index as u32 + 1
+        *self.index.entry(key).or_insert_with_key(|key| {
+            self.all.push(key.clone());
+            self.all.len() as u32
+        })
     }
 
     fn key(&self, number: u32) -> Option<&(Cow<'s, str>, Cow<'s, str>)> {
@@ -81,7 +80,7 @@ pub(super) fn check(list: &SiteList<'_>, report: &mut Report<'_, '_>) {
     let full: Vec<usize> = rows().filter(|&row| list.occupant(row).occupancy.is_one()).collect();
     if let Some(&first) = full.first() {
         let labels: Vec<String> =
-            full.iter().take(MAX_LABELS).map(|&row| format!("`{}`", list.sites[row].label)).collect();
+            full.iter().take(MAX_LABELS).map(|&row| format!("`{}`", list.labels.get(row))).collect();
         let more = if full.len() > MAX_LABELS { " and others" } else { "" };
         let text = format!(
             "{}{more} are alternatives of other sites by their disorder groups, but have an occupancy of 1",

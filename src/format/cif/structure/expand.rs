@@ -65,7 +65,10 @@ pub fn wrapped(position: &Fractional) -> Fractional {
 }
 
 /// Pairs of sites that share a position or overlap.
-pub fn near_pairs(lattice: &Lattice, positions: &[Fractional]) -> Vec<Contact> {
+///
+/// # Errors
+/// As [`contacts`].
+pub fn near_pairs(lattice: &Lattice, positions: &[Fractional]) -> Result<Vec<Contact>, usize> {
     contacts(lattice, positions, OVERLAP)
 }
 

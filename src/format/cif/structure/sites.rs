@@ -1,7 +1,8 @@
 //! The site list of a data block, row by row.
 
 use super::disorder::{Groups, check};
-use super::labels::rename_duplicates;
+use super::expand::wrapped;
+use super::labels::ListedLabels;
 use super::position::{axes, position};
 use super::report::Report;
 use super::shares::Shares;
@@ -11,7 +12,6 @@ use crate::crystal::{Fractional, Lattice, Occupant};
 use crate::format::cif::{Block, Diagnostic, Loop};
 use crate::ion::{Amount, Species};
 use num_traits::{One, Zero};
-use std::borrow::Cow;
 use std::collections::BTreeMap;
 
 const LABEL: [&str; 1] = ["_atom_site_label"];
@@ -25,10 +25,8 @@ pub(super) const MAX_SUM: (i128, i128) = (101, 100);
 /// Kinds that are compared one by one before the ordered index is asked.
 const FIRST_KINDS: usize = 8;
 
-/// A row of the site list. A list may have a million: its kinds are kept apart, and its labels stay in the text.
-pub(super) struct Listed<'s> {
-    pub label: Cow<'s, str>,
-    pub position: Fractional,
+/// A row of the site list beside its label and position.
+pub(super) struct Listed {
     /// Which of the list's kinds.
     pub kind: u32,
     /// Which of the list's disorder groups.
@@ -38,7 +36,10 @@ pub(super) struct Listed<'s> {
 
 /// The rows that can be used, and the labels of those that were passed over.
 pub(super) struct SiteList<'s> {
-    pub sites: Vec<Listed<'s>>,
+    pub sites: Vec<Listed>,
+    pub labels: ListedLabels,
+    /// In [0, 1).
+    pub positions: Vec<Fractional>,
     /// Species with their shares, each once.
     pub kinds: Vec<Occupant>,
     pub groups: Groups<'s>,
@@ -85,6 +86,8 @@ pub(super) fn read<'s>(
     let mut kinds = Kinds::default();
     let mut list = SiteList {
         sites: Vec::with_capacity(table.n_rows()),
+        labels: ListedLabels::default(),
+        positions: Vec::with_capacity(table.n_rows()),
         kinds: Vec::new(),
         groups: Groups::default(),
         skipped: Vec::new(),
@@ -117,16 +120,17 @@ pub(super) fn read<'s>(
         }
         let species =
             types.species(label.map(|c| table.value(row, c)), type_symbol.map(|c| table.value(row, c)), report)?;
-        let label = match label {
-            Some(_) => head.text(),
-            None => Cow::Owned(format!("{}{}", species.element, row + 1)),
-        };
+        match label {
+            Some(_) => list.labels.push(&head.text()),
+            None => list.labels.push(&format!("{}{}", species.element, row + 1)),
+        }
         let kind = kinds.of(Occupant { species, occupancy: share });
         let group = if disorder[1].is_some() { list.groups.of(table, row, disorder) } else { 0 };
-        list.sites.push(Listed { label, position, kind, group, place: head.place() as u32 });
+        list.positions.push(wrapped(&position));
+        list.sites.push(Listed { kind, group, place: head.place() as u32 });
     }
     list.kinds = kinds.all;
-    rename_duplicates(&mut list.sites, report);
+    list.labels.rename_duplicates(|row| list.sites[row].place as usize, report);
     check(&list, report);
     Ok(list)
 }
