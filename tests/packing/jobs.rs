@@ -1,12 +1,12 @@
 //! The main job on hosts in which a large cation belongs to the packing, on templates, frameworks and saddles.
 
 use interstice::build::{Built, build};
+use interstice::crystal::neighbours::NeighbourList;
 use interstice::crystal::symmetry::{TOLERANCE, symmetrise};
 use interstice::ordering::Progress;
 use interstice::packing::template::document;
 use interstice::packing::{Host, Templates, interstices};
 use interstice::recipe::{CellChoice, Recipe};
-use interstice::rules::Shells;
 
 fn recipe(composition: &str, packing: &str) -> Recipe {
     Recipe { packing: packing.into(), ..Recipe::new(composition) }
@@ -21,19 +21,21 @@ fn group(built: &Built) -> i32 {
     symmetrise(&built.cells[0].structure, TOLERANCE).unwrap().group.number
 }
 
+/// Longest distance at which anions are looked for, Å.
+const REACH: f64 = 6.0;
+
 /// Anions around each site of an element: those within 1.2 times the nearest's distance.
 fn coordination(built: &Built, element: &str) -> Vec<usize> {
     let structure = &built.cells[0].structure;
-    let shells = Shells::new(structure);
+    let positions = structure.positions();
+    let list = NeighbourList::new(&structure.lattice, &positions, REACH);
     let of = |i: usize| structure.sites[i].occupants[0].species;
     (0..structure.sites.len())
         .filter(|i| of(*i).element.symbol() == element)
         .map(|i| {
-            let anions: Vec<f64> = shells.contacts[i]
-                .iter()
-                .filter(|n| of(n.index).charge.is_some_and(|q| q < 0))
-                .map(|n| n.distance)
-                .collect();
+            let near = list.of(i, REACH);
+            let anions: Vec<f64> =
+                near.iter().filter(|n| of(n.index).charge.is_some_and(|q| q < 0)).map(|n| n.distance).collect();
             let least = anions.iter().copied().fold(f64::INFINITY, f64::min);
             anions.iter().filter(|d| **d < 1.2 * least).count()
         })
