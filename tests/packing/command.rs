@@ -44,7 +44,7 @@ fn paths(value: &Value, at: &str, all: &mut BTreeSet<String>) {
     }
 }
 
-/// docs/holes.md lists every field of the JSON, and none that there is not.
+/// src/report/holes.md lists every field of the JSON, and none that there is not.
 #[test]
 fn the_documented_fields_are_those_written() {
     let folder = scratch("holes-fields");
@@ -53,7 +53,7 @@ fn the_documented_fields_are_those_written() {
     paths(&json(&full, &folder), "", &mut written);
     std::fs::write(folder.join("doubt.cif"), cif_of_rutile().replace("O1 O", "O1 ?")).unwrap();
     paths(&json(&["holes", "doubt.cif#O"], &folder), "", &mut written);
-    let page = include_str!("../../docs/holes.md");
+    let page = include_str!("../../src/report/holes.md");
     let documented: BTreeSet<String> =
         page.lines().filter_map(|line| line.strip_prefix("| `")?.split('`').next().map(String::from)).collect();
     assert_eq!(documented, written);
