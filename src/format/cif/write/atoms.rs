@@ -51,7 +51,9 @@ impl<'a> AtomList<'a> {
 
     fn kind_of(&mut self, occupants: &'a [Occupant]) -> usize {
         let first = &self.kinds[..self.kinds.len().min(FIRST_KINDS)];
-        if let Some(kind) = first.iter().position(|kind| *kind.occupants == *occupants) {
+        // Sites of a kind mostly share their occupants.
+        let same = |kind: &Kind<'_>| std::ptr::eq(&*kind.occupants, occupants) || *kind.occupants == *occupants;
+        if let Some(kind) = first.iter().position(same) {
             return kind;
         }
         let mut sorted = Cow::Borrowed(occupants);
